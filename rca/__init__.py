@@ -1,0 +1,3 @@
+"""Root-cause reports for failed hydraulic pumps."""
+
+__version__ = "0.1.0"

@@ -1,0 +1,1 @@
+"""Corrective actions: states, guards, proof."""

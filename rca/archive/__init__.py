@@ -1,0 +1,1 @@
+"""Typed results to JSON and back; results.json, record.json, their schemas."""

@@ -1,0 +1,1 @@
+"""What every floor may use: errors, units, sources, readings."""

@@ -1,0 +1,1 @@
+"""The typed case: frozen records, SI inside; knows no check."""

@@ -1,0 +1,1 @@
+"""What the teardown and the photographs show, by side."""

@@ -1,0 +1,1 @@
+"""The discharge side: could a bubble stay hot, was there fuel and time to ignite."""

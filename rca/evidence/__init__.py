@@ -1,0 +1,1 @@
+"""From check results to evidence items: what was found, and how often it would be found."""

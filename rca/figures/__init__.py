@@ -1,0 +1,1 @@
+"""Drawings of stored results; no computation of their own."""

@@ -1,0 +1,1 @@
+"""Reads a case folder into a typed case and reports every problem at once."""

@@ -1,0 +1,1 @@
+"""What the oil reports show: limits, change from new oil, trends."""

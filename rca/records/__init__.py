@@ -1,0 +1,1 @@
+"""What the pressure, temperature and speed records show."""

@@ -1,0 +1,1 @@
+"""Lays stored results out as HTML and PDF."""

@@ -1,0 +1,1 @@
+"""Runs the notebooks through papermill and puts the report folder in place."""

@@ -1,0 +1,1 @@
+"""Published statistics as plain functions; knows no case."""

@@ -1,0 +1,1 @@
+"""The suction side: pressure budget, released air, what restricted the flow."""

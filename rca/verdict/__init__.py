@@ -1,0 +1,1 @@
+"""From evidence items to a verdict: mechanisms, side, causes, next test."""

@@ -1,0 +1,1 @@
+"""Kept scripts that make shipped data; not part of the installed program."""
