@@ -98,7 +98,7 @@ def _words(error: PapermillException) -> str:
 
 
 def _unfinished(notebook: NotebookNode) -> str | None:
-    """papermill calls a run complete whose kernel died or left; every code cell must have run."""
+    """A run is called complete whose kernel died or left; every code cell must have run."""
     for index, cell in enumerate(notebook.cells):
         if cell.cell_type != "code" or not cell.source.strip():
             continue
