@@ -1,4 +1,4 @@
-"""Photographs: the list, and what each file itself says. Pixels are read only to prove the file."""
+"""Photographs: the list, and what each file itself says; pixels only prove the file whole."""
 
 import warnings
 from collections.abc import Mapping
