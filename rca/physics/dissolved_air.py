@@ -42,13 +42,17 @@ def ostwald_d2779(temperature: float, density_15: float, gas: str = "air") -> fl
     return float(raw * 7.70 * (0.980 - density_15 / 1000.0))
 
 
-def oxygen_share_dissolved() -> float:
-    """Share of oxygen in air dissolved at saturation [-], from D2779's coefficients.
+def oxygen_share_dissolved(temperature: float = 298.15) -> float:
+    """Share of oxygen in air dissolved at saturation [-], by D2779 at a temperature [K].
 
-    About a third, against 0.2095 in free air. An upper bound: an ageing oil uses oxygen up.
+    About a third, against 0.2095 in free air (argon counted with D2779's 0.18). An upper bound:
+    an ageing oil uses its oxygen up.
     """
-    oxygen = 0.2095 * OSTWALD_273["O2"]
-    return oxygen / (oxygen + 0.7905 * OSTWALD_273["N2"])
+    lo = {"O2": 0.16, "N2": 0.069, "Ar": 0.18}
+    air = {"O2": 0.2095, "N2": 0.7812, "Ar": 0.0093}
+    exponent = 0.639 * (700.0 - temperature) / temperature
+    dissolved = {gas: air[gas] * (3.333 * lo[gas]) ** exponent for gas in air}
+    return dissolved["O2"] / sum(dissolved.values())
 
 
 def released_ratio(
