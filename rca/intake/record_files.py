@@ -1,0 +1,430 @@
+"""Pressure, temperature, speed and level records: CSV and Parquet, read in blocks, in SI.
+
+A slow record (below ``FAST_HZ``) is pooled into bins that keep mean and extremes; a fast one is
+handed on as a burst. Time is the file's stamps in the stated zone, plus the stated offset and
+drift. What can't be read is counted and said, never filled in.
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from pathlib import Path
+from zoneinfo import ZoneInfo
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.base.errors import Problem, Severity
+from rca.base.source import Source
+from rca.base.units import Scale, channel_scale
+from rca.case.model import Case, RecordFile
+from rca.case.series import AlignedRecord, Series
+
+FloatArray = npt.NDArray[np.float64]
+FAST_HZ = 500.0
+BLOCK_ROWS = 500_000
+MOST_BINS = 200_000
+BURST_SAMPLES = 4_000_000
+GAP_INTERVALS = 5.0  # a step this many sampling intervals long is a gap
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Burst:
+    """A fast record of one quantity, evenly sampled, in SI."""
+
+    quantity: str
+    start_s: float
+    rate_hz: float
+    values: FloatArray
+    source: Source
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FileSummary:
+    """One record file as it was read."""
+
+    file: str
+    rows: int
+    start_s: float
+    end_s: float
+    interval_s: float
+    gaps: tuple[tuple[float, float], ...]  # (start, end), seconds of true time
+    bad_stamps: int
+    backward_stamps: int
+    bad_cells: dict[str, int]
+    offset_s: float
+    channels: tuple[str, ...]
+    fast: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RecordReading:
+    """All records of a case."""
+
+    aligned: AlignedRecord | None
+    bursts: tuple[Burst, ...]
+    files: tuple[FileSummary, ...]
+    problems: tuple[Problem, ...]
+
+
+@dataclass(slots=True)
+class _Collected:
+    """Samples of one file before alignment."""
+
+    time: list[FloatArray] = field(default_factory=list)
+    columns: dict[str, list[FloatArray]] = field(default_factory=dict)
+
+
+class RecordError(ValueError):
+    """A record can't be read; carries the problem."""
+
+    def __init__(self, problem: Problem) -> None:
+        self.problem = problem
+        super().__init__(str(problem))
+
+
+def read_records(
+    folder: Path, case: Case, *, atmosphere: float, bin_s: float | None = None
+) -> RecordReading:
+    """Read every record of the case; a file that can't be read becomes a problem, the rest goes on."""
+    problems: list[Problem] = []
+    slow: list[tuple[RecordFile, FloatArray, dict[str, FloatArray], FileSummary]] = []
+    bursts: list[Burst] = []
+    files: list[FileSummary] = []
+    for record in case.records:
+        try:
+            time, columns, summary = read_file(folder, case, record, atmosphere=atmosphere)
+        except RecordError as error:
+            problems.append(error.problem)
+            continue
+        files.append(summary)
+        if summary.fast:
+            bursts += _bursts(record, time, columns, summary)
+        else:
+            slow.append((record, time, columns, summary))
+    return RecordReading(
+        aligned=_aligned(slow, bin_s) if slow else None,
+        bursts=tuple(bursts),
+        files=tuple(files),
+        problems=tuple(problems),
+    )
+
+
+def read_file(
+    folder: Path, case: Case, record: RecordFile, *, atmosphere: float
+) -> tuple[FloatArray, dict[str, FloatArray], FileSummary]:
+    """One record file: true time [s since 1970 UTC] and each quantity in SI.
+
+    Raises RecordError for a missing column, no readable time or an unreadable file.
+    """
+    scales = {c.column: (c.quantity, channel_scale(c.quantity, c.unit)) for c in record.channels}
+    collected = _Collected(columns={quantity: [] for quantity, _ in scales.values()})
+    bad_cells = dict.fromkeys(collected.columns, 0)
+    bad_stamps = 0
+    for frame in _blocks(folder / record.file, record):
+        stamps = _stamps(frame, record, sum(t.size for t in collected.time))
+        known = np.isfinite(stamps)
+        bad_stamps += int((~known).sum())
+        collected.time.append(stamps[known])
+        for column, (quantity, scale) in scales.items():
+            values, bad = _numbers(frame, column, record)
+            bad_cells[quantity] += bad
+            collected.columns[quantity].append(_si(values, scale, atmosphere)[known])
+    if not collected.time or not sum(t.size for t in collected.time):
+        raise _error(
+            record,
+            "no row with a readable time",
+            "a time in every row",
+            "Check the time column and its format.",
+        )
+    time = np.concatenate(collected.time)
+    columns = {q: np.concatenate(parts) for q, parts in collected.columns.items()}
+    backward = int(np.sum(np.diff(time) <= 0))
+    if backward:
+        order = np.argsort(time, kind="stable")
+        time, columns = time[order], {q: v[order] for q, v in columns.items()}
+        fresh = np.concatenate([[True], np.diff(time) > 0])
+        time, columns = time[fresh], {q: v[fresh] for q, v in columns.items()}
+    first = time[0]
+    time = time + record.time.offset_s + (time - first) * record.time.drift_ppm * 1e-6
+    return time, columns, _summary(record, time, bad_stamps, backward, bad_cells)
+
+
+def _summary(
+    record: RecordFile, time: FloatArray, bad_stamps: int, backward: int, bad: dict[str, int]
+) -> FileSummary:
+    steps = np.diff(time)
+    interval = float(np.median(steps)) if steps.size else 0.0
+    places = (
+        np.flatnonzero(steps > GAP_INTERVALS * interval) if interval > 0 else np.array([], int)
+    )
+    return FileSummary(
+        file=record.file,
+        rows=int(time.size),
+        start_s=float(time[0]),
+        end_s=float(time[-1]),
+        interval_s=interval,
+        gaps=tuple((float(time[i]), float(time[i + 1])) for i in places[:200]),
+        bad_stamps=bad_stamps,
+        backward_stamps=backward,
+        bad_cells={q: n for q, n in bad.items() if n},
+        offset_s=record.time.offset_s,
+        channels=tuple(c.quantity for c in record.channels),
+        fast=interval > 0 and 1.0 / interval >= FAST_HZ,
+    )
+
+
+def _blocks(path: Path, record: RecordFile) -> Iterator[object]:
+    """Frames of text (CSV) or typed columns (Parquet), at most ``BLOCK_ROWS`` rows each."""
+    import polars as pl  # noqa: PLC0415  its thread pool must not exist before a fork
+
+    wanted = [c.column for c in record.channels]
+    wanted += [record.time.column] if record.time.column else []
+    try:
+        with path.open("rb") as stream:
+            magic = stream.read(4)
+        if not magic:
+            raise _error(record, "an empty file", "a header row and samples", "Export it again.")
+        if magic == b"PAR1":
+            lazy = pl.scan_parquet(path)
+        else:
+            lazy = pl.scan_csv(
+                path,
+                separator=_separator(path),
+                infer_schema=False,
+                truncate_ragged_lines=True,
+                encoding="utf8-lossy",
+            )
+        names = [name.strip() for name in lazy.collect_schema().names()]
+        lazy = lazy.rename(dict(zip(lazy.collect_schema().names(), names, strict=True)))
+    except (pl.exceptions.PolarsError, OSError) as error:
+        raise _error(
+            record, f"a file that can't be read ({error})", "CSV or Parquet", "Export it again."
+        ) from error
+    for column in wanted:
+        if column not in names:
+            raise _error(
+                record,
+                f"no column {column!r}",
+                f"one of {', '.join(names[:40])}",
+                "Mend the column name in case.toml; capitals and spaces count.",
+            )
+    start = 0
+    while True:
+        try:
+            frame = lazy.select(wanted).slice(start, BLOCK_ROWS).collect(engine="streaming")
+        except pl.exceptions.PolarsError as error:
+            raise _error(
+                record,
+                f"rows that can't be read ({error})",
+                "one format throughout",
+                "Look at the rows near the end of the file.",
+            ) from error
+        if frame.height == 0:
+            return
+        yield frame
+        if frame.height < BLOCK_ROWS:
+            return
+        start += BLOCK_ROWS
+
+
+def _separator(path: Path) -> str:
+    with path.open("rb") as stream:
+        head = stream.read(20_000).decode("utf-8", errors="replace").splitlines()[:10]
+    return max(";\t,", key=lambda d: min((line.count(d) for line in head), default=0))
+
+
+def _stamps(frame: object, record: RecordFile, before: int) -> FloatArray:
+    """Seconds since 1970 UTC, NaN where a stamp can't be read."""
+    import polars as pl  # noqa: PLC0415
+
+    assert isinstance(frame, pl.DataFrame)
+    axis = record.time
+    if not axis.column:
+        assert axis.start is not None and axis.rate_hz is not None  # noqa: PT018
+        return axis.start.timestamp() + (before + np.arange(frame.height)) / axis.rate_hz
+    column = frame.get_column(axis.column)
+    if column.dtype.is_temporal():
+        naive = getattr(column.dtype, "time_zone", None) is None
+        epoch = column.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6
+        return _localised(epoch, axis.zone, record) if naive else np.asarray(epoch)
+    if column.dtype.is_numeric():
+        return _epoch(column.cast(pl.Float64).to_numpy())
+    text = column.cast(pl.String).str.strip_chars()
+    numeric = text.cast(pl.Float64, strict=False)
+    if numeric.null_count() < frame.height / 2:
+        return _epoch(numeric.to_numpy())
+    zoned = text.str.contains(r"(Z|[+-]\d\d:?\d\d)$")
+    if bool(zoned.fill_null(value=False).mean() or 0.0 > 0.5):
+        parsed = text.str.to_datetime(strict=False, time_unit="us", time_zone="UTC")
+        return np.asarray(parsed.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6)
+    formats = (
+        "%Y-%m-%d %H:%M:%S%.f",
+        "%Y-%m-%dT%H:%M:%S%.f",
+        "%d.%m.%Y %H:%M:%S%.f",
+        "%Y/%m/%d %H:%M:%S%.f",
+        "%d/%m/%Y %H:%M:%S%.f",
+        "%Y-%m-%d %H:%M",
+    )
+    best = min(
+        (text.str.to_datetime(form, strict=False, time_unit="us") for form in formats),
+        key=lambda series: series.null_count(),
+    )
+    epoch = best.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6
+    return _localised(np.asarray(epoch, dtype=float), axis.zone, record)
+
+
+def _epoch(values: FloatArray) -> FloatArray:
+    """Seconds, milliseconds, microseconds since 1970, or spreadsheet day numbers, by size."""
+    seen = values[np.isfinite(values)]
+    middle = float(np.median(seen)) if seen.size else float("nan")
+    if 20_000 < middle < 80_000:  # spreadsheet days since 1899-12-30
+        return np.asarray((values - 25569.0) * 86400.0)
+    factor = 1.0 if middle < 1e11 else 1e-3 if middle < 1e14 else 1e-6
+    return np.asarray(values * factor)
+
+
+def _localised(epoch: FloatArray, zone: str, record: RecordFile) -> FloatArray:
+    """Naive stamps read in their zone; the offset is taken hour by hour across time changes."""
+    if not zone:
+        raise _error(
+            record,
+            "stamps without a zone",
+            "a zone",
+            'Add it:  time = { column = "...", zone = "Europe/Vienna" }',
+        )
+    if zone == "UTC":
+        return epoch
+    from datetime import UTC, datetime  # noqa: PLC0415
+
+    info = ZoneInfo(zone)
+    hours = np.floor(epoch / 3600.0)
+    shifts = {}
+    for hour in np.unique(hours[np.isfinite(hours)]):
+        naive = datetime.fromtimestamp(float(hour) * 3600.0, tz=UTC).replace(tzinfo=info)
+        offset = naive.utcoffset()
+        shifts[hour] = offset.total_seconds() if offset is not None else 0.0
+    keys = np.array(sorted(shifts))
+    if not keys.size:
+        return epoch
+    places = np.clip(np.searchsorted(keys, hours), 0, keys.size - 1)
+    values = np.array([shifts[k] for k in keys])
+    return np.asarray(np.where(np.isfinite(epoch), epoch - values[places], np.nan))
+
+
+def _numbers(frame: object, column: str, record: RecordFile) -> tuple[FloatArray, int]:
+    """Values as floats, and how many cells hold something that is no number."""
+    import polars as pl  # noqa: PLC0415
+
+    del record
+    assert isinstance(frame, pl.DataFrame)
+    series = frame.get_column(column)
+    if series.dtype.is_numeric():
+        return np.asarray(series.cast(pl.Float64).to_numpy(), dtype=float), 0
+    text = series.cast(pl.String).str.strip_chars()
+    if bool(text.str.contains(r"^-?\d+,\d+$").fill_null(value=False).any()):
+        text = text.str.replace(",", ".", literal=True)
+    numbers = text.cast(pl.Float64, strict=False)
+    blank = text.is_null() | (text == "")
+    bad = int((numbers.is_null() & ~blank.fill_null(value=True)).sum())
+    return np.asarray(numbers.fill_null(float("nan")).to_numpy(), dtype=float), bad
+
+
+def _si(values: FloatArray, scale: Scale, atmosphere: float) -> FloatArray:
+    return np.asarray(values * scale.factor + scale.offset + (atmosphere if scale.gauge else 0.0))
+
+
+def _bursts(
+    record: RecordFile, time: FloatArray, columns: dict[str, FloatArray], summary: FileSummary
+) -> list[Burst]:
+    return [
+        Burst(
+            quantity=quantity,
+            start_s=float(time[0]),
+            rate_hz=1.0 / summary.interval_s,
+            values=values[:BURST_SAMPLES],
+            source=Source(
+                file=record.file,
+                locator=f"column {_column(record, quantity)}",
+            ),
+        )
+        for quantity, values in columns.items()
+    ]
+
+
+def _aligned(
+    slow: list[tuple[RecordFile, FloatArray, dict[str, FloatArray], FileSummary]],
+    bin_s: float | None,
+) -> AlignedRecord:
+    start = min(float(time[0]) for _, time, _, _ in slow)
+    end = max(float(time[-1]) for _, time, _, _ in slow)
+    finest = max(min(s.interval_s for *_, s in slow), 1e-3)
+    width = bin_s or max(finest, (end - start) / MOST_BINS)
+    origin = np.floor(start / width) * width
+    bins = int(np.floor((end - origin) / width)) + 1
+    series: dict[str, Series] = {}
+    for record, time, columns, _ in slow:
+        index = np.floor((time - origin) / width).astype(np.int64)
+        for quantity, values in columns.items():
+            fresh = _binned(record, quantity, index, values, bins)
+            series[quantity] = _merged(series[quantity], fresh) if quantity in series else fresh
+    centres = origin + (np.arange(bins) + 0.5) * width
+    return AlignedRecord(time_s=centres, bin_s=float(width), series=series)
+
+
+def _binned(
+    record: RecordFile,
+    quantity: str,
+    index: npt.NDArray[np.int64],
+    values: FloatArray,
+    bins: int,
+) -> Series:
+    good = np.isfinite(values)
+    place, value = index[good], values[good]
+    count = np.bincount(place, minlength=bins)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        mean = np.bincount(place, weights=value, minlength=bins) / count
+    low, high = np.full(bins, np.inf), np.full(bins, -np.inf)
+    np.minimum.at(low, place, value)
+    np.maximum.at(high, place, value)
+    low[count == 0] = high[count == 0] = np.nan
+    return Series(
+        quantity=quantity,
+        unit="SI",
+        mean=mean,
+        low=low,
+        high=high,
+        source=Source(file=record.file, locator=f"column {_column(record, quantity)}"),
+    )
+
+
+def _merged(one: Series, other: Series) -> Series:
+    """Two files of one quantity; where both have samples the first file's stand."""
+    take = np.isfinite(one.mean)
+    return Series(
+        quantity=one.quantity,
+        unit=one.unit,
+        mean=np.where(take, one.mean, other.mean),
+        low=np.where(take, one.low, other.low),
+        high=np.where(take, one.high, other.high),
+        source=Source(
+            file=one.source.file,
+            locator=f"{one.source.locator}, and {other.source.file} {other.source.locator}",
+        ),
+    )
+
+
+def _column(record: RecordFile, quantity: str) -> str:
+    return next(c.column for c in record.channels if c.quantity == quantity)
+
+
+def _error(record: RecordFile, found: str, expected: str, mend: str) -> RecordError:
+    return RecordError(
+        Problem(
+            severity=Severity.ERROR,
+            file=record.file,
+            place="",
+            found=found,
+            expected=expected,
+            mend=mend,
+        )
+    )
