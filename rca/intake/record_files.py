@@ -85,14 +85,14 @@ class RecordError(ValueError):
 def read_records(
     folder: Path, case: Case, *, atmosphere: float, bin_s: float | None = None
 ) -> RecordReading:
-    """Read every record of the case; a file that can't be read becomes a problem, the rest goes on."""
+    """Every record of the case; a file that can't be read becomes a problem, the rest goes on."""
     problems: list[Problem] = []
     slow: list[tuple[RecordFile, FloatArray, dict[str, FloatArray], FileSummary]] = []
     bursts: list[Burst] = []
     files: list[FileSummary] = []
     for record in case.records:
         try:
-            time, columns, summary = read_file(folder, case, record, atmosphere=atmosphere)
+            time, columns, summary = read_file(folder, record, atmosphere=atmosphere)
         except RecordError as error:
             problems.append(error.problem)
             continue
@@ -110,7 +110,7 @@ def read_records(
 
 
 def read_file(
-    folder: Path, case: Case, record: RecordFile, *, atmosphere: float
+    folder: Path, record: RecordFile, *, atmosphere: float
 ) -> tuple[FloatArray, dict[str, FloatArray], FileSummary]:
     """One record file: true time [s since 1970 UTC] and each quantity in SI.
 
@@ -254,7 +254,7 @@ def _stamps(frame: object, record: RecordFile, before: int) -> FloatArray:
     if numeric.null_count() < frame.height / 2:
         return _epoch(numeric.to_numpy())
     zoned = text.str.contains(r"(Z|[+-]\d\d:?\d\d)$")
-    if bool(zoned.fill_null(value=False).mean() or 0.0 > 0.5):
+    if float(zoned.fill_null(value=False).mean() or 0.0) > 0.5:  # type: ignore[arg-type]
         parsed = text.str.to_datetime(strict=False, time_unit="us", time_zone="UTC")
         return np.asarray(parsed.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6)
     formats = (

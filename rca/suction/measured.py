@@ -8,11 +8,11 @@ import numpy.typing as npt
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.physics.dissolved_air import released_ratio, released_share_in_time
+from rca.records.running import running_bins, standing_bins
 from rca.suction.budget import fluid_viscosities, local_atmosphere, pressure_budget, pump_flow
 
 FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
-RUNNING_SHARE = 0.2  # of nominal speed; below it the pump stands or coasts
 WARM_BELOW = 12.0  # [K] below normal temperature counts as cold
 SENSOR_U = 0.02e5  # [Pa], standard uncertainty of an industrial transducer where none is stated;
 # common practice, no source
@@ -75,7 +75,7 @@ def measure_inlet(
     if running.sum() < LEAST_BINS:
         return None
     expected = _expected_at_rest(case)
-    rest = _standing_bins(aligned) & seen
+    rest = standing_bins(aligned) & seen
     standstill = float(np.median(inlet.mean[rest])) if rest.sum() >= LEAST_BINS else None
     offset = standstill - expected if standstill is not None and expected is not None else None
     warm, cold = _by_temperature(case, aligned, running)
@@ -101,25 +101,6 @@ def measure_inlet(
         drift_per_week=_drift(pieces),
         remark=inlet.remark,
     )
-
-
-def running_bins(case: Case, aligned: AlignedRecord) -> Mask:
-    """Bins in which the shaft turns; all of them where no speed is on record."""
-    speed = aligned.get("shaft speed")
-    if speed is None:
-        discharge = aligned.get("discharge pressure")
-        if discharge is None:
-            return np.ones(aligned.time_s.shape, dtype=bool)
-        return np.nan_to_num(discharge.mean, nan=0.0) > local_atmosphere(case) + 3e5
-    nominal = case.pump.speed.value if case.pump.speed else float(np.nanmax(speed.mean))
-    return np.nan_to_num(speed.mean, nan=0.0) > RUNNING_SHARE * nominal
-
-
-def _standing_bins(aligned: AlignedRecord) -> Mask:
-    speed = aligned.get("shaft speed")
-    if speed is None:
-        return np.zeros(aligned.time_s.shape, dtype=bool)
-    return np.nan_to_num(speed.high, nan=1.0) < 0.02 * float(np.nanmax(speed.mean))
 
 
 def _expected_at_rest(case: Case) -> float | None:

@@ -1,0 +1,251 @@
+"""What the records show: sensors, low-pressure events, duty, rise time of the pressure."""
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.case.model import Case
+from rca.case.series import AlignedRecord, FloatArray, Series
+from rca.records.bursts import BurstFinding
+from rca.records.running import running_bins, standing_bins
+
+Mask = npt.NDArray[np.bool_]
+STUCK_HOURS = 24.0  # a running channel this long on one value is stuck; common practice
+COLD_BELOW = 12.0  # [K] below normal temperature
+LONGEST_LIST = 200
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SensorRemark:
+    """Something a channel's own samples say about its sensor."""
+
+    quantity: str
+    finding: str
+    set_aside: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LowEvent:
+    """The inlet pressure stayed below the limit while the pump ran."""
+
+    start_s: float
+    duration_s: float
+    lowest: float  # [Pa]
+    temperature: float | None  # [K]
+    speed: float | None  # [1/s]
+    cold: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Duty:
+    """How the machine was used, over the whole record."""
+
+    hours_recorded: float
+    hours_running: float
+    starts: int
+    cold_starts: int
+    temperature_p95: float | None  # [K]
+    discharge_p95: float | None  # [Pa]
+    speed_p95: float | None  # [1/s]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RecordCheck:
+    """The records of a case, judged."""
+
+    limit: float | None  # [Pa], of the inlet pressure
+    sensors: tuple[SensorRemark, ...]
+    events: tuple[LowEvent, ...]  # the longest, in order of time
+    events_total: int
+    events_hours: float
+    events_cold_share: float | None  # share of the events' time with cold oil
+    cold_share_of_running: float | None
+    duty: Duty | None
+    bursts: tuple[BurstFinding, ...]
+    quantities: tuple[str, ...]
+
+
+def check_records(
+    case: Case,
+    aligned: AlignedRecord | None,
+    bursts: tuple[BurstFinding, ...],
+    *,
+    limit: float | None,
+) -> RecordCheck:
+    """Judge the records; ``limit`` [Pa] is the lowest allowed inlet pressure."""
+    if aligned is None:
+        return RecordCheck(
+            limit=limit,
+            sensors=(),
+            events=(),
+            events_total=0,
+            events_hours=0.0,
+            events_cold_share=None,
+            cold_share_of_running=None,
+            duty=None,
+            bursts=bursts,
+            quantities=tuple(sorted({b.quantity for b in bursts})),
+        )
+    running = running_bins(case, aligned)
+    cold = _cold(case, aligned)
+    events = _events(aligned, running, cold, limit)
+    hours = sum(e.duration_s for e in events) / 3600.0
+    kept = sorted(sorted(events, key=lambda e: -e.duration_s)[:LONGEST_LIST], key=_start)
+    return RecordCheck(
+        limit=limit,
+        sensors=_sensors(case, aligned, running),
+        events=tuple(kept),
+        events_total=len(events),
+        events_hours=hours,
+        events_cold_share=_cold_share(events, cold),
+        cold_share_of_running=float(np.mean(cold[running]))
+        if cold is not None and running.any()
+        else None,
+        duty=_duty(aligned, running, cold),
+        bursts=bursts,
+        quantities=tuple(sorted(aligned.series)),
+    )
+
+
+def usable(case: Case, aligned: AlignedRecord) -> AlignedRecord:
+    """The record with every channel set aside that its own samples disown; nothing is dropped."""
+    remarks = {
+        r.quantity: r.finding
+        for r in _sensors(case, aligned, running_bins(case, aligned))
+        if r.set_aside
+    }
+    return replace(
+        aligned,
+        series={
+            q: replace(s, usable=False, remark=remarks[q]) if q in remarks else s
+            for q, s in aligned.series.items()
+        },
+    )
+
+
+def _start(event: LowEvent) -> float:
+    return event.start_s
+
+
+def _cold(case: Case, aligned: AlignedRecord) -> Mask | None:
+    temperature = aligned.get("oil temperature")
+    if temperature is None or case.fluid.temperature is None:
+        return None
+    return np.nan_to_num(temperature.mean, nan=1e3) < case.fluid.temperature.value - COLD_BELOW
+
+
+def _events(
+    aligned: AlignedRecord, running: Mask, cold: Mask | None, limit: float | None
+) -> list[LowEvent]:
+    inlet = aligned.get("inlet pressure")
+    if inlet is None or limit is None:
+        return []
+    below = running & (np.nan_to_num(inlet.low, nan=np.inf) < limit)
+    edges = np.flatnonzero(np.diff(np.concatenate([[False], below, [False]]).astype(np.int8)))
+    events = []
+    for first, after in zip(edges[::2], edges[1::2], strict=True):
+        block = slice(int(first), int(after))
+        events.append(
+            LowEvent(
+                start_s=float(aligned.time_s[first] - aligned.bin_s / 2),
+                duration_s=float(after - first) * aligned.bin_s,
+                lowest=float(np.nanmin(inlet.low[block])),
+                temperature=_middle(aligned.get("oil temperature"), block),
+                speed=_middle(aligned.get("shaft speed"), block),
+                cold=bool(np.mean(cold[block]) > 0.5) if cold is not None else False,
+            )
+        )
+    return events
+
+
+def _middle(series: Series | None, block: slice) -> float | None:
+    if series is None:
+        return None
+    values = series.mean[block]
+    return float(np.nanmedian(values)) if np.isfinite(values).any() else None
+
+
+def _cold_share(events: list[LowEvent], cold: Mask | None) -> float | None:
+    total = sum(e.duration_s for e in events)
+    if cold is None or total <= 0:
+        return None
+    return sum(e.duration_s for e in events if e.cold) / total
+
+
+def _sensors(case: Case, aligned: AlignedRecord, running: Mask) -> tuple[SensorRemark, ...]:
+    remarks = []
+    for quantity, series in sorted(aligned.series.items()):
+        for finding, aside in _remarks(case, aligned, quantity, series, running):
+            remarks.append(SensorRemark(quantity=quantity, finding=finding, set_aside=aside))
+    return tuple(remarks)
+
+
+def _remarks(
+    case: Case, aligned: AlignedRecord, quantity: str, series: Series, running: Mask
+) -> list[tuple[str, bool]]:
+    found: list[tuple[str, bool]] = []
+    values = series.mean[np.isfinite(series.mean)]
+    if not values.size:
+        return [("holds no readable sample", True)]
+    if "pressure" in quantity and "filter" not in quantity and float(np.min(values)) <= 0.0:
+        found.append(
+            ("falls to or below zero absolute; the unit may be gauge, not absolute", True)
+        )
+    stuck = _longest_same(series.mean, running) * aligned.bin_s / 3600.0
+    if stuck > STUCK_HOURS and quantity != "shaft speed":
+        found.append((f"stays on one value for {stuck:.0f} running hours: stuck", True))
+    if quantity == "inlet pressure":
+        rest = standing_bins(aligned) & np.isfinite(series.mean)
+        level = case.reservoir.level_above_inlet
+        if rest.sum() >= 20 and level is not None:
+            offset = float(np.median(series.mean[rest])) - (
+                _air(case) + 860.0 * 9.80665 * level.value
+            )
+            if abs(offset) > 0.03e5:
+                aside = abs(offset) > 0.5e5
+                found.append(
+                    (f"reads {offset / 1e5:+.3f} bar against air and head at standstill", aside)
+                )
+    return found
+
+
+def _air(case: Case) -> float:
+    from rca.physics.atmosphere import standard_atmosphere  # noqa: PLC0415
+
+    if case.header.ambient_pressure is not None:
+        return case.header.ambient_pressure.value
+    return float(standard_atmosphere(case.header.altitude.value if case.header.altitude else 0.0))
+
+
+def _longest_same(values: FloatArray, running: Mask) -> int:
+    """Longest run of equal neighbouring samples while running, in bins."""
+    seen = values[running & np.isfinite(values)]
+    if seen.size < 2:
+        return 0
+    breaks = np.flatnonzero(np.diff(seen) != 0)
+    edges = np.concatenate([[-1], breaks, [seen.size - 1]])
+    return int(np.max(np.diff(edges)))
+
+
+def _duty(aligned: AlignedRecord, running: Mask, cold: Mask | None) -> Duty:
+    starts = np.flatnonzero(np.diff(running.astype(np.int8)) == 1) + 1
+    hour = aligned.bin_s / 3600.0
+    known = np.any([np.isfinite(s.mean) for s in aligned.series.values()], axis=0)
+    return Duty(
+        hours_recorded=float(known.sum()) * hour,
+        hours_running=float((running & known).sum()) * hour,
+        starts=int(starts.size),
+        cold_starts=int(np.sum(cold[starts])) if cold is not None else 0,
+        temperature_p95=_p95(aligned, "oil temperature", running),
+        discharge_p95=_p95(aligned, "discharge pressure", running),
+        speed_p95=_p95(aligned, "shaft speed", running),
+    )
+
+
+def _p95(aligned: AlignedRecord, quantity: str, running: Mask) -> float | None:
+    series = aligned.get(quantity)
+    if series is None:
+        return None
+    values = series.mean[running & np.isfinite(series.mean)]
+    return float(np.quantile(values, 0.95)) if values.size else None
