@@ -52,7 +52,7 @@ def oxygen_share_dissolved(temperature: float = 298.15) -> float:
     air = {"O2": 0.2095, "N2": 0.7812, "Ar": 0.0093}
     exponent = 0.639 * (700.0 - temperature) / temperature
     dissolved = {gas: air[gas] * (3.333 * lo[gas]) ** exponent for gas in air}
-    return dissolved["O2"] / sum(dissolved.values())
+    return float(dissolved["O2"]) / float(sum(dissolved.values()))
 
 
 def released_ratio(

@@ -1,0 +1,51 @@
+"""Oil samples as the laboratory reported them: every number keeps its text and its cell."""
+
+from dataclasses import dataclass, field
+from datetime import date
+
+from rca.base.source import Source
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class OilValue:
+    """One result: operator and value in the canonical unit of its property.
+
+    ``op`` is "=", "<", ">" or "~"; a value below detection is ("<", limit), never a number.
+    """
+
+    property: str  # canonical name, or an element symbol
+    op: str
+    value: float
+    unit: str
+    text: str
+    source: Source
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class OilSample:
+    """One sample of one bottle."""
+
+    id: str
+    sampled: date | None
+    point: str
+    laboratory: str
+    machine_hours: float | None
+    oil_hours: float | None
+    new_oil: bool
+    values: dict[str, OilValue] = field(default_factory=dict)
+    excluded: str = ""  # the reason, where it is set aside on purpose
+    source: Source = field(default_factory=lambda: Source(file="", locator=""))
+
+    def get(self, name: str) -> float | None:
+        """The number of an uncensored result, else None."""
+        found = self.values.get(name)
+        return found.value if found is not None and found.op in ("=", "~") else None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class UnreadCell:
+    """A cell of a report that is kept and shown, and not used."""
+
+    source: Source
+    text: str
+    reason: str
