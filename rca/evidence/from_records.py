@@ -1,0 +1,140 @@
+"""Evidence from the records, but for the inlet pressure itself (see ``from_suction``)."""
+
+from rca.base.source import Source
+from rca.case.model import Case
+from rca.case.series import AlignedRecord
+from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
+from rca.records.check import RecordCheck
+
+HOT = 343.15  # [K], 70 degC; bulk oil above it ages fast, common practice
+OVER = 1.10  # share of nominal speed or rated pressure that counts as beyond
+FAST_RISE = 3.0e-3  # [s]
+HIGH_RISE = 100e5  # [Pa]
+
+
+def from_records(
+    case: Case, check: RecordCheck, aligned: AlignedRecord | None
+) -> tuple[EvidenceItem | NotAssessed, ...]:
+    """Items on speed, pressure, temperature and the rise of the pressure."""
+    duty = check.duty
+    speed = case.pump.maximum_speed or case.pump.speed
+    rating = case.pump.relief_pressure or case.pump.discharge_pressure
+    return (
+        _level(
+            "overspeed",
+            Node.OVERSPEED,
+            duty.speed_p95 if duty else None,
+            speed.value * OVER if speed else None,
+            "shaft speed",
+            "1/s",
+            aligned,
+            1.0,
+        ),
+        _level(
+            "overpressure",
+            Node.OVERPRESSURE,
+            duty.discharge_p95 if duty else None,
+            rating.value * OVER if rating else None,
+            "discharge pressure",
+            "bar(a)",
+            aligned,
+            1e-5,
+        ),
+        _level(
+            "bulk_hot",
+            Node.BULK_HOT,
+            duty.temperature_p95 if duty else None,
+            HOT,
+            "oil temperature",
+            "K",
+            aligned,
+            1.0,
+        ),
+        _worse_cold(check, aligned),
+        _rise(check),
+    )
+
+
+def _level(
+    key: str,
+    node: Node,
+    value: float | None,
+    limit: float | None,
+    quantity: str,
+    unit: str,
+    aligned: AlignedRecord | None,
+    scale: float,
+) -> EvidenceItem | NotAssessed:
+    series = aligned.series.get(quantity) if aligned is not None else None
+    if value is None or limit is None or series is None:
+        return NotAssessed(key=f"record.{key}", node=node, missing=f"a record of {quantity}")
+    beyond = value > limit
+    return EvidenceItem(
+        key=f"record.{key}",
+        node=node,
+        likelihood={"no": 0.05, "yes": 0.9} if beyond else {"no": 0.95, "yes": 0.1},
+        statement=(
+            f"While running, the 95 % point of {quantity} is {value * scale:.4g} {unit}; held "
+            f"against {limit * scale:.4g} {unit}."
+        ),
+        sources=(series.source,),
+        group=Group.OPERATION,
+        common_cause=f"sensor of {quantity}",
+        basis=Basis.MEASURED,
+        absent=not beyond,
+    )
+
+
+def _worse_cold(check: RecordCheck, aligned: AlignedRecord | None) -> EvidenceItem | NotAssessed:
+    share, base = check.events_cold_share, check.cold_share_of_running
+    if share is None or base is None or aligned is None:
+        return NotAssessed(
+            key="record.worse_cold",
+            node=Node.WORSE_COLD,
+            missing="low-pressure events with the oil temperature beside them",
+        )
+    worse = share > 2.0 * base and share > 0.5
+    return EvidenceItem(
+        key="record.worse_cold",
+        node=Node.WORSE_COLD,
+        likelihood={"no": 0.1, "yes": 0.85} if worse else {"no": 0.85, "yes": 0.25},
+        statement=(
+            f"{100 * share:.0f} % of the time below the inlet limit fell on cold oil, which made "
+            f"up {100 * base:.0f} % of the running time."
+        ),
+        sources=(aligned.series["inlet pressure"].source,),
+        group=Group.OPERATION,
+        common_cause="sensor of the inlet pressure",
+        basis=Basis.MEASURED,
+        absent=not worse,
+    )
+
+
+def _rise(check: RecordCheck) -> EvidenceItem | NotAssessed:
+    rises = [
+        b for b in check.bursts if b.quantity == "discharge pressure" and b.rise_time is not None
+    ]
+    if not rises:
+        return NotAssessed(
+            key="record.rise",
+            node=Node.FAST_PRESSURE_RISE,
+            missing="a fast record of the discharge pressure over a pressure rise",
+        )
+    one = min(rises, key=lambda b: b.rise_time or 1.0)
+    assert one.rise_time is not None and one.rise_size is not None  # noqa: PT018
+    fast = one.rise_time < FAST_RISE and one.rise_size > HIGH_RISE
+    return EvidenceItem(
+        key="record.rise",
+        node=Node.FAST_PRESSURE_RISE,
+        likelihood={"no": 0.15, "yes": 0.85} if fast else {"no": 0.7, "yes": 0.4},
+        statement=(
+            f"Fastest 10 to 90 % rise of the discharge pressure: {one.rise_time * 1e3:.2f} ms over "
+            f"{one.rise_size / 1e5:.0f} bar at {one.rate_hz / 1e3:.0f} kHz"
+            f"{'' if one.rise_resolved else '; the sampling does not resolve it'}."
+        ),
+        sources=(Source(file=one.source.file, locator=one.source.locator),),
+        group=Group.COMPRESSION,
+        common_cause="fast record of the discharge pressure",
+        basis=Basis.MEASURED,
+        absent=not fast,
+    )

@@ -1,0 +1,230 @@
+"""Evidence from the suction side: measured and computed inlet pressure, released air."""
+
+import numpy as np
+from scipy.stats import norm
+
+from rca.base.source import Origin, Reading, Source
+from rca.case.model import Case
+from rca.case.series import AlignedRecord
+from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
+from rca.suction.check import NEAR_VAPOUR, RELEASED_MATTERS, SuctionCheck
+from rca.suction.measured import Regime
+
+MISREAD = 0.03  # share of records that are wrong in a way no check of ours sees; judgement
+STRAIN = (
+    0.06e5  # [Pa], shortfall against the clean line at which a restriction is as likely as not
+)
+Items = list[EvidenceItem | NotAssessed]
+
+
+def from_suction(
+    case: Case, check: SuctionCheck, aligned: AlignedRecord | None
+) -> tuple[EvidenceItem | NotAssessed, ...]:
+    """Items on the inlet pressure and what it does to the air in the oil."""
+    items: Items = [*_measured(check, aligned), *_computed(case, check)]
+    items.append(_released(check, aligned))
+    items.append(_cold(check))
+    items += _restriction(check, aligned)
+    return tuple(items)
+
+
+def _source(aligned: AlignedRecord | None) -> tuple[Source, ...]:
+    series = aligned.series.get("inlet pressure") if aligned is not None else None
+    return (series.source,) if series is not None else ()
+
+
+def _states(mean: float, u: float, limit: float, *, trust: float) -> dict[str, float]:
+    """P(this reading | true state) for the three states of the inlet.
+
+    The true pressure lies about the reading with standard deviation u; each state's share of that
+    distribution, mixed with a share of readings that say nothing.
+    """
+    near = float(norm.cdf(NEAR_VAPOUR, mean, u))
+    low = float(norm.cdf(limit, mean, u)) - near
+    shares = {"healthy": 1.0 - near - low, "low": low, "near vapour": near}
+    return {
+        k: float(np.clip(trust * v + (1 - trust) / 3, 0.002, 0.998)) for k, v in shares.items()
+    }
+
+
+def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
+    measured = check.measured
+    if measured is None or check.limit is None:
+        return [
+            NotAssessed(
+                key="inlet.measured",
+                node=Node.INLET_PRESSURE,
+                missing="a usable record of the inlet pressure while the pump runs",
+            )
+        ]
+    regime = measured.last or measured.warm or measured.cold
+    if regime is None:
+        return []
+    u = float(np.hypot(measured.sensor_u, 0.02e5))
+    return [
+        EvidenceItem(
+            key="inlet.measured",
+            node=Node.INLET_PRESSURE,
+            likelihood=_states(regime.median, u, check.limit, trust=1 - MISREAD),
+            statement=_regime_words(regime, check.limit),
+            sources=_source(aligned),
+            group=Group.INLET,
+            common_cause="sensor of the inlet pressure",
+            basis=Basis.MEASURED,
+            reading=Reading(value=regime.median, unit="Pa", u=u, origin=Origin.MEASURED),
+            limit=Reading(value=check.limit, unit="Pa"),
+            absent=regime.median >= check.limit,
+        )
+    ]
+
+
+def _regime_words(regime: Regime, limit: float) -> str:
+    return (
+        f"Measured inlet pressure in the last part of the record, warm and running: median "
+        f"{regime.median / 1e5:.2f} bar(a), 5 to 95 % {regime.p05 / 1e5:.2f} to "
+        f"{regime.p95 / 1e5:.2f} bar(a); limit {limit / 1e5:.2f} bar(a)."
+    )
+
+
+def _computed(case: Case, check: SuctionCheck) -> Items:
+    state = check.normal
+    if state is None or check.limit is None:
+        missing = ", ".join(check.missing) or "the inlet limit"
+        return [NotAssessed(key="inlet.computed", node=Node.INLET_PRESSURE, missing=missing)]
+    # A clean line that is already too low is telling; one that is healthy says little about the
+    # state it was in when the pump failed.
+    trust = 0.75 if state.below_limit > 0.5 else 0.25
+    return [
+        EvidenceItem(
+            key="inlet.computed",
+            node=Node.INLET_PRESSURE,
+            likelihood=_states(
+                state.pressure.mean, max(state.pressure.sd, 1e3), check.limit, trust=trust
+            ),
+            statement=(
+                f"Computed inlet pressure of the line as described, clean and warm: "
+                f"{state.pressure.mean / 1e5:.2f} +/- {state.pressure.sd / 1e5:.2f} bar(a); limit "
+                f"{check.limit / 1e5:.2f} bar(a)."
+            ),
+            sources=_descriptor(case),
+            group=Group.INLET,
+            common_cause="pressure budget",
+            basis=Basis.COMPUTED,
+            reading=Reading(
+                value=state.pressure.mean,
+                unit="Pa",
+                u=state.pressure.sd,
+                origin=Origin.CALCULATED,
+            ),
+            absent=state.below_limit < 0.5,
+        )
+    ]
+
+
+def _released(check: SuctionCheck, aligned: AlignedRecord | None) -> EvidenceItem | NotAssessed:
+    regime = check.measured and (check.measured.last or check.measured.warm)
+    state = check.normal
+    if regime:
+        level, sources, basis = regime.released, _source(aligned), Basis.MEASURED
+        common, trust = "sensor of the inlet pressure", 0.85
+    elif state is not None:
+        level, sources, basis = state.released.p50, (), Basis.COMPUTED
+        common, trust = "pressure budget", 0.4
+    else:
+        return NotAssessed(
+            key="air.released", node=Node.RELEASED_AIR, missing="the inlet pressure"
+        )
+    # the time constant of release is uncertain over two decades: one and a half in log terms
+    share = float(norm.cdf(np.log(max(level, 1e-6) / RELEASED_MATTERS) / 1.0))
+    yes = trust * share + (1 - trust) / 2
+    return EvidenceItem(
+        key="air.released",
+        node=Node.RELEASED_AIR,
+        likelihood={
+            "no": float(np.clip(1 - yes, 0.02, 0.98)),
+            "yes": float(np.clip(yes, 0.02, 0.98)),
+        },
+        statement=(
+            f"Air released by the time the oil reaches the pump: about {100 * level:.1f} % of the "
+            "oil's volume at inlet pressure (finite-rate release)."
+        ),
+        sources=sources or (Source(file="case.toml", locator="suction_line, fluid"),),
+        group=Group.AIR,
+        common_cause=common,
+        basis=basis,
+        reading=Reading(value=level, unit="-", origin=Origin.CALCULATED),
+        absent=share < 0.5,
+    )
+
+
+def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
+    cold = check.cold
+    measured = check.measured.cold if check.measured is not None else None
+    if measured is not None and check.limit is not None:
+        share = measured.below_limit
+        words = (
+            f"With cold oil the measured inlet pressure is below the limit for {100 * share:.0f} % "
+            f"of {measured.hours:.1f} h; lowest {measured.lowest / 1e5:.2f} bar(a)."
+        )
+    elif cold is not None:
+        share = cold.below_limit
+        words = (
+            f"At the coldest start the computed inlet pressure of the clean line is "
+            f"{cold.pressure.mean / 1e5:.2f} +/- {cold.pressure.sd / 1e5:.2f} bar(a)."
+        )
+    else:
+        return NotAssessed(
+            key="inlet.cold", node=Node.COLD_OIL, missing="the oil temperature at start"
+        )
+    # a clean line that holds at the cold start clears the cold oil of being the cause
+    clean = cold.below_limit if cold is not None else 0.5
+    yes = 0.15 + 0.7 * share * (0.4 + 0.6 * clean)
+    return EvidenceItem(
+        key="inlet.cold",
+        node=Node.COLD_OIL,
+        likelihood={"no": 1 - yes, "yes": yes},
+        statement=words,
+        sources=(Source(file="case.toml", locator="suction_line, fluid"),),
+        group=Group.INLET,
+        common_cause="cold starts",
+        basis=Basis.MEASURED if measured is not None else Basis.COMPUTED,
+        absent=yes < 0.5,
+    )
+
+
+def _restriction(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
+    """Measured far below the clean line: something in the line or the tank was restricted."""
+    measured = check.measured
+    if measured is None or measured.shortfall is None:
+        return []
+    z = (measured.shortfall - STRAIN) / max(measured.sensor_u, 0.02e5)
+    share = float(norm.cdf(z))
+    drift = measured.drift_per_week
+    growing = (
+        f", growing by {drift / 1e5:.3f} bar a week" if drift is not None and drift > 500 else ""
+    )
+    yes = 0.05 + 0.85 * share
+    return [
+        EvidenceItem(
+            key="inlet.shortfall",
+            node=Node.STRAINER_RESISTANCE,
+            likelihood={"no": 0.95 - 0.75 * share, "yes": yes},
+            statement=(
+                f"At the end of the record the warm inlet pressure is "
+                f"{measured.shortfall / 1e5:.2f} bar below that of the clean line{growing}."
+            ),
+            sources=_source(aligned),
+            group=Group.INLET,
+            common_cause="sensor of the inlet pressure",
+            basis=Basis.MEASURED,
+            reading=Reading(value=measured.shortfall, unit="Pa", u=measured.sensor_u),
+            absent=share < 0.5,
+        )
+    ]
+
+
+def _descriptor(case: Case) -> tuple[Source, ...]:
+    digest = next((f.sha256 for f in case.files if f.file == "case.toml"), "")
+    return (
+        Source(file="case.toml", locator="pump, reservoir, suction_line, fluid", sha256=digest),
+    )
