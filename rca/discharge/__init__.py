@@ -1,1 +1,1 @@
-"""The discharge side: could a bubble stay hot, was there fuel and time to ignite."""
+"""The discharge side: compression of entrained air, heat, fuel and time for ignition."""

@@ -11,7 +11,7 @@ from rca.base.errors import OutOfRangeError
 Floats = npt.NDArray[np.float64]
 
 UNIVERSAL_GAS_CONSTANT = 8.31446261815324  # [J/(mol K)], SI 2019, exact
-# Dry air, mole fractions O2, N2, Ar; carbon dioxide counted with nitrogen (ISO 2533:1975, rounded).
+# Dry air, mole fractions O2, N2, Ar; carbon dioxide counted with nitrogen (ISO 2533:1975).
 AIR_MOLE_FRACTIONS = (0.2095, 0.7812, 0.0093)
 # Molar masses of O2, N2, Ar [kg/mol], IUPAC 2021 abridged.
 MOLAR_MASSES = (31.998e-3, 28.014e-3, 39.95e-3)
@@ -47,7 +47,7 @@ def _checked(temperature: npt.ArrayLike, name: str) -> Floats:
     if not np.all((t >= T_MIN) & (t <= T_MAX)):
         raise OutOfRangeError(
             f"{name} needs {T_MIN:g} K <= T <= {T_MAX:g} K, the range of the NASA TM-4513 "
-            f"polynomials; got {temperature}"
+            f"polynomials; got {temperature!r}"
         )
     return t
 

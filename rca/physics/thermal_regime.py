@@ -23,6 +23,21 @@ _MEAN = np.array([0.047, 0.089, 0.162, 0.262, 0.419, 0.603, 0.760, 0.854, 0.918,
 SURROGATE_SPREAD = 0.04  # [-], largest shift of the fractions between pressure cases
 
 
+def dilute_air_conductivity(temperature: Floats) -> Floats:
+    """The equation of ``air_conductivity`` without its range check, for property tables [W/(m K)].
+
+    Above 2000 K an extrapolation: only inertial collapse gets there, where the temperature is an
+    upper bound for other reasons too. Source: Lemmon and Jacobsen 2004, eqs. 2-5.
+    """
+    log_star = np.log(temperature / _EPSILON_K)
+    omega = np.exp(sum(b * log_star**i for i, b in enumerate(_COLLISION)))
+    viscosity_upas = (
+        0.0266958 * np.sqrt(AIR_MOLAR_MASS * 1e3 * temperature) / (_SIGMA_NM**2 * omega)
+    )
+    tau = _T_REDUCING / temperature
+    return np.asarray(1e-3 * (1.308 * viscosity_upas + 1.405 * tau**-1.1 - 1.036 * tau**-0.3))
+
+
 def air_conductivity(temperature: npt.ArrayLike) -> Floats:
     """Thermal conductivity of dilute air [W/(m K)], shape of ``temperature`` [K].
 
@@ -35,13 +50,9 @@ def air_conductivity(temperature: npt.ArrayLike) -> Floats:
     if not np.all((t >= 70.0) & (t <= 2000.0)):
         raise OutOfRangeError(
             f"air_conductivity holds from 70 K to 2000 K (Lemmon and Jacobsen 2004); "
-            f"got {temperature}"
+            f"got {temperature!r}"
         )
-    log_star = np.log(t / _EPSILON_K)
-    omega = np.exp(sum(b * log_star**i for i, b in enumerate(_COLLISION)))
-    viscosity_upas = 0.0266958 * np.sqrt(AIR_MOLAR_MASS * 1e3 * t) / (_SIGMA_NM**2 * omega)
-    tau = _T_REDUCING / t
-    return np.asarray(1e-3 * (1.308 * viscosity_upas + 1.405 * tau**-1.1 - 1.036 * tau**-0.3))
+    return dilute_air_conductivity(t)
 
 
 def air_diffusivity(temperature: npt.ArrayLike, pressure: npt.ArrayLike) -> Floats:
@@ -51,7 +62,7 @@ def air_diffusivity(temperature: npt.ArrayLike, pressure: npt.ArrayLike) -> Floa
     """
     p = np.asarray(pressure, dtype=float)
     if not np.all(p > 0):
-        raise OutOfRangeError(f"air_diffusivity needs pressure > 0 Pa absolute; got {pressure}")
+        raise OutOfRangeError(f"air_diffusivity needs pressure > 0 Pa absolute; got {pressure!r}")
     t = np.asarray(temperature, dtype=float)
     return np.asarray(air_conductivity(t) * AIR_GAS_CONSTANT * t / (p * air_heat_capacity(t)))
 
@@ -95,7 +106,7 @@ def radius_at_peclet(
 def _fraction(number: npt.ArrayLike, table: Floats) -> Floats:
     pe = np.asarray(number, dtype=float)
     if not np.all(pe > 0):
-        raise OutOfRangeError(f"the fraction of the adiabatic rise needs Pe > 0; got {number}")
+        raise OutOfRangeError(f"the fraction of the adiabatic rise needs Pe > 0; got {number!r}")
     inside = np.interp(np.log(pe), np.log(_PECLET), table)
     # Below the table the core fraction falls as sqrt(Pe) or faster: an upper bound there.
     low = table[0] * np.sqrt(pe / _PECLET[0])

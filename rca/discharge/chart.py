@@ -1,0 +1,87 @@
+"""What the figures show: core temperature over radius and rise time, and one bubble's history."""
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.discharge.delay import delays
+from rca.discharge.inputs import Inputs
+from rca.discharge.model import Map, Trace
+from rca.discharge.sampling import HOLD
+from rca.physics.bubble import bubble_batch, bubble_history
+from rca.physics.collapse import rayleigh_collapse_time
+
+Floats = npt.NDArray[np.float64]
+
+RADII = (0.02e-3, 5e-3)  # [m]
+RISES = (0.03e-3, 30e-3)  # [s]
+TRACE_ROWS = 160
+
+
+def core_map(inputs: Inputs, *, columns: int = 30, rows: int = 16) -> Map:
+    """Peak core temperature over radius and rise time at the middle of all other inputs.
+
+    Quasi-static: inertia is left out, so that the map shows what the line pressure alone does.
+    """
+    radius = np.geomspace(*RADII, columns)
+    rise = np.geomspace(*RISES, rows)
+    r, t = (a.ravel() for a in np.meshgrid(radius, rise))
+    peaks = bubble_batch(
+        r, inputs.temperature.value, inputs.inlet.value, inputs.discharge.value, t, hold=HOLD,
+        oil=inputs.oil, inertial=False, delays=delays(),
+    )  # fmt: skip
+    core = peaks.core.reshape(rows, columns)
+    return Map(
+        radius=tuple(radius.tolist()),
+        rise_time=tuple(rise.tolist()),
+        core=tuple(tuple(row) for row in core.tolist()),
+        critical=tuple(critical_radius(inputs, rise).tolist()),
+    )
+
+
+def critical_radius(inputs: Inputs, rise: Floats) -> Floats:
+    """Radius at the inlet at which the core stays hot just as long as the delay [m]; inf if none.
+
+    Stoichiometric vapour taken to be there, so a lower bound on the radius; bisection on ln R.
+    """
+    low, high = np.full(rise.shape, np.log(RADII[0])), np.full(rise.shape, np.log(2 * RADII[1]))
+    for _ in range(14):
+        middle = 0.5 * (low + high)
+        hot = _ignites(inputs, np.exp(middle), rise)
+        high, low = np.where(hot, middle, high), np.where(hot, low, middle)
+    never = ~_ignites(inputs, np.full(rise.shape, 2 * RADII[1]), rise)
+    return np.asarray(np.where(never, np.inf, np.exp(high)))
+
+
+def _ignites(inputs: Inputs, radius: Floats, rise: Floats) -> npt.NDArray[np.bool_]:
+    peaks = bubble_batch(
+        radius, inputs.temperature.value, inputs.inlet.value, inputs.discharge.value, rise,
+        hold=HOLD, oil=inputs.oil, inertial=False, delays=delays(), stop_at_ignition=True,
+    )  # fmt: skip
+    return np.asarray(peaks.delay_integral >= 1.0)
+
+
+def trace(inputs: Inputs, radius: float) -> Trace:
+    """One bubble through the machine's middle rise and a hold of as long again."""
+    rise = inputs.rise.spread.p50
+    p1, p2 = inputs.inlet.value, inputs.discharge.value
+    collapse = float(rayleigh_collapse_time(radius, p1, inputs.oil.density))
+    time = np.array([0.0, rise, 2.5 * rise])
+    line = np.array([p1, p2, p2])
+    history = bubble_history(
+        radius, inputs.temperature.value, time, line, oil=inputs.oil,
+        inertial=rise < 20.0 * collapse, delays=delays(),
+    )  # fmt: skip
+    keep = np.unique(np.linspace(0, history.time.size - 1, TRACE_ROWS).astype(int))
+    at = history.time[keep]
+    return Trace(
+        radius_0=radius,
+        rise_time=rise,
+        time=tuple(at.tolist()),
+        line=tuple(np.interp(at, time, line).tolist()),
+        pressure=tuple(history.pressure[keep].tolist()),
+        radius=tuple(history.radius[keep].tolist()),
+        core=tuple(history.core[keep].tolist()),
+        mean=tuple(history.mean[keep].tolist()),
+        wall=tuple(history.wall[keep].tolist()),
+        above_800=float(history.peaks.above[0][0]),
+    )

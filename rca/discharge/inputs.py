@@ -1,0 +1,164 @@
+"""The uncertain inputs of the discharge check: what the case gives, what is assumed instead."""
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.base.source import Origin, Reading
+from rca.case.model import Case
+from rca.case.vocabulary import PumpKind
+from rca.discharge.model import RiseTime, Spread
+from rca.physics.bubble import OilSide
+from rca.physics.collapse import ramp_time
+from rca.physics.fluid_class import class_values, density
+from rca.physics.viscosity import kinematic_viscosity
+from rca.suction.budget import fluid_class_name, fluid_viscosities, local_atmosphere
+
+if TYPE_CHECKING:  # its module loads scipy.signal, which nothing here needs
+    from rca.records.bursts import BurstFinding
+
+Floats = npt.NDArray[np.float64]
+
+# Shaft angle from inlet to discharge pressure, 5 % and 95 % points [degrees]; common practice, no
+# source. Gear and screw pumps may also see one pitch only, which the lower end covers.
+TRANSITION_DEGREES = {
+    PumpKind.AXIAL_PISTON: (5.0, 20.0),
+    PumpKind.RADIAL_PISTON: (5.0, 25.0),
+    PumpKind.VANE: (10.0, 30.0),
+    PumpKind.GEAR: (30.0, 180.0),
+    PumpKind.SCREW: (60.0, 360.0),
+}
+STATED_ANGLE_SPREAD = 0.30  # ln; relief grooves bend the rise inside the stated angle
+UNKNOWN_RISE = (0.3e-3, 20e-3)  # [s], 5 % and 95 % where the pump is not described at all
+USUAL_SPEED = (16.0, 50.0)  # [1/s], 5 % and 95 % where no speed is stated
+LARGE_RISE = 0.5  # of the discharge pressure: a burst must rise this far to show the compression
+_Z95 = 1.6448536
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Inputs:
+    """Everything the sampling needs, with the words on what was assumed."""
+
+    inlet: Reading
+    discharge: Reading
+    temperature: Reading
+    rise: RiseTime
+    oil: OilSide
+    assumed: tuple[str, ...]
+
+
+def spread(values: Floats) -> Spread:
+    """Mean, standard deviation and 5, 50, 95 % points of a sample."""
+    low, middle, high = (float(q) for q in np.quantile(values, [0.05, 0.5, 0.95]))
+    return Spread(
+        mean=float(np.mean(values)), sd=float(np.std(values)), p05=low, p50=middle, p95=high
+    )
+
+
+def gather(
+    case: Case,
+    inlet: tuple[float, float] | None,
+    discharge: Reading,
+    bursts: "tuple[BurstFinding, ...]",
+) -> Inputs:
+    """The inputs of a case; ``inlet`` = mean and standard uncertainty [Pa abs] or None."""
+    assumed: list[str] = []
+    if inlet is None:
+        inlet = 0.92 * local_atmosphere(case), 0.06 * local_atmosphere(case)
+        assumed.append("inlet pressure 8 % below the atmosphere, +/- 6 %")
+    temperature = case.fluid.temperature
+    if temperature is None:
+        temperature = Reading(value=323.15, unit="K", u=8.0, origin=Origin.ASSUMED)
+        assumed.append("oil at 50 degC, +/- 8 K")
+    rise = rise_time(case, discharge, bursts)
+    if not rise.measured:
+        assumed.append(f"pressure rise: {rise.basis}")
+    return Inputs(
+        inlet=Reading(value=inlet[0], unit="Pa", u=inlet[1], origin=Origin.CALCULATED),
+        discharge=discharge,
+        temperature=temperature,
+        rise=rise,
+        oil=oil_side(case, temperature.value),
+        assumed=tuple(assumed),
+    )
+
+
+def rise_time(case: Case, discharge: Reading, bursts: "tuple[BurstFinding, ...]" = ()) -> RiseTime:
+    """Rise from inlet to discharge pressure: from a burst that resolves it, else from geometry.
+
+    A pressure port sees the line, not the chamber; only a rise over half the discharge pressure
+    sampled at 20 kHz or more counts. The 10-90 % time is stretched to the whole rise by 1/0.8.
+    """
+    for burst in bursts:
+        if (
+            burst.quantity == "discharge pressure"
+            and burst.rise_resolved
+            and burst.rise_time is not None
+            and (burst.rise_size or 0.0) >= LARGE_RISE * discharge.value
+        ):
+            return _rise(
+                np.log(burst.rise_time / 0.8), 0.25, True,
+                f"fastest large rise in {burst.source.file}, {burst.rate_hz / 1e3:.0f} kHz",
+            )  # fmt: skip
+    speed = case.pump.speed
+    n = (speed.value, speed.value) if speed is not None else USUAL_SPEED
+    turning = (
+        f"at {n[0] * 60:.0f} rpm" if speed is not None else "at 960 to 3000 rpm (no speed given)"
+    )
+    angle, kind = case.pump.transition_angle, case.pump.kind
+    if angle is not None:
+        relative = angle.u / angle.value if angle.u else STATED_ANGLE_SPREAD
+        low, high = (float(ramp_time(angle.value, x)) for x in (n[1], n[0]))
+        return _rise(
+            0.5 * np.log(low * high), float(np.hypot(relative, np.log(high / low) / (2 * _Z95))),
+            False, f"{np.degrees(angle.value):.0f} degrees of shaft angle, as stated, {turning}",
+        )  # fmt: skip
+    if kind is not None:
+        first, last = TRANSITION_DEGREES[kind]
+        low, high = (
+            float(ramp_time(np.radians(first), n[1])),
+            float(ramp_time(np.radians(last), n[0])),
+        )
+        words = f"{first:.0f} to {last:.0f} degrees, usual for {kind.value} pumps, {turning}"
+    else:
+        low, high = UNKNOWN_RISE
+        words = "0.3 to 20 ms, since the kind of pump is not stated"
+    return _rise(0.5 * np.log(low * high), np.log(high / low) / (2 * _Z95), False, words)
+
+
+def _rise(log_mean: float, log_sd: float, measured: bool, basis: str) -> RiseTime:
+    middle, wide = float(np.exp(log_mean)), float(np.exp(_Z95 * log_sd))
+    mean = middle * float(np.exp(0.5 * log_sd**2))
+    return RiseTime(
+        spread=Spread(
+            mean=mean, sd=mean * float(np.sqrt(np.expm1(log_sd**2))),
+            p05=middle / wide, p50=middle, p95=middle * wide,
+        ),
+        basis=basis, measured=measured, log_mean=float(log_mean), log_sd=float(log_sd),
+    )  # fmt: skip
+
+
+def oil_side(case: Case, temperature: float) -> OilSide:
+    """Properties of the oil round a bubble, from the case or its class.
+
+    Heat capacity and conductivity of petroleum oils: Cragoe, NBS Misc. Publ. 97 (1929), from
+    memory; for other classes the same forms are used (wall temperatures move by a few kelvin).
+    """
+    values = class_values(fluid_class_name(case))
+    rho15 = case.fluid.density_15.value if case.fluid.density_15 else values.density_15
+    rho = density(temperature, rho15, values.expansion)
+    celsius, d = temperature - 273.15, rho15 / 999.0
+    nu = 30e-6
+    points = fluid_viscosities(case)
+    if points is not None:
+        nu = float(kinematic_viscosity(temperature, *points))
+    return OilSide(
+        conductivity=0.1172 * (1 - 0.00054 * celsius) / d,
+        density=rho,
+        heat_capacity=float(1e3 * (1.685 + 0.0034 * celsius) / np.sqrt(d)),
+        viscosity=nu * rho,
+        tension=values.surface_tension,
+        sound_speed=float(np.sqrt(values.bulk_modulus / rho)),
+    )
