@@ -17,7 +17,7 @@ RISES = (0.03e-3, 30e-3)  # [s]
 TRACE_ROWS = 160
 
 
-def core_map(inputs: Inputs, *, columns: int = 30, rows: int = 16) -> Map:
+def core_map(inputs: Inputs, *, columns: int = 40, rows: int = 24) -> Map:
     """Peak core temperature over radius and rise time at the middle of all other inputs.
 
     Quasi-static: inertia is left out, so that the map shows what the line pressure alone does.

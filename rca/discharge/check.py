@@ -107,7 +107,6 @@ def _assemble(
     assumed = inputs.assumed
     if carried_air is None:
         assumed = (*assumed, f"carried-in air {USUAL_CARRIED_AIR:.1%} of the oil's volume")
-    heaviest = max(populations, key=lambda p: p.weight)
     return DischargeCheck(
         inlet_pressure=inputs.inlet,
         discharge_pressure=inputs.discharge,
@@ -127,9 +126,9 @@ def _assemble(
         ignition=ignition_status(hot, fuel),
         budget=_budget(case, inputs, air),
         air_fraction=air,
-        influences=influences(coarse),
+        influences=influences(inputs, coarse),
         map=core_map(inputs),
-        trace=trace(inputs, heaviest.radius.p50),
+        trace=trace(inputs, coarse.population.radius.p50),
         high_pressure=high,
         assumed=assumed,
         seed=seed,

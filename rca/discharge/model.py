@@ -72,8 +72,8 @@ class Influence:
     """How much one uncertain input moves the peak core temperature."""
 
     name: str
-    low: float  # [K], median core where the input is in its lowest fifth
-    high: float  # [K], where it is in its highest fifth
+    low: float  # [K], peak core with the input at its 5 % point, all others at their middle
+    high: float  # [K], with it at its 95 % point
     share: float  # of the variance of the ranks explained by it alone [-]
 
 

@@ -26,15 +26,6 @@ OXYGEN_FACTOR = {"released air": (0.5, 1.0), "carried-in air": (1.0, 1.0)}
 KINETICS_SPREAD = 0.4  # of ln(delay); 50 % either way
 CONDUCTION = (1.0, 1.3)  # dense gas beside the cold wall conducts better than the dilute law
 LOW_MARGIN, HIGH_MARGIN = 0.5, 1.5  # radius over critical radius: excluded below, possible above
-NAMES = (
-    "bubble radius",
-    "rise time",
-    "inlet pressure",
-    "oil temperature",
-    "discharge pressure",
-    "kinetics",
-    "gas conductivity",
-)
 DISCHARGE_SPREAD = 0.02  # relative, where the case gives none
 TEMPERATURE_SPREAD = 5.0  # [K], where the case gives none
 HOLD = 0.05  # [s] at the discharge pressure before the bubble expands again; upper estimate
@@ -143,26 +134,33 @@ def sample(
     return Sampled(population=population, draw=drawn, peaks=peaks)
 
 
-def influences(sampled: Sampled) -> tuple[Influence, ...]:
-    """What moves the peak core temperature, largest first."""
-    d, core = sampled.draw, sampled.peaks.core
-    columns = (d.radius, d.rise, d.inlet, d.temperature, d.discharge, d.delay, d.conduction)
-    ranks = _ranks(core)
-    rows = []
-    for name, values in zip(NAMES, columns, strict=True):
-        if name == "kinetics":  # moves the delay, not the temperature
-            continue
-        low, high = np.quantile(values, [0.2, 0.8])
-        share = float(np.corrcoef(_ranks(values), ranks)[0, 1] ** 2)
-        rows.append(
-            Influence(
-                name=name,
-                low=float(np.median(core[values <= low])),
-                high=float(np.median(core[values >= high])),
-                share=share,
-            )
+def influences(inputs: Inputs, sampled: Sampled) -> tuple[Influence, ...]:
+    """What moves the peak core temperature, largest first: one input at a time, and by rank."""
+    d, ranks = sampled.draw, _ranks(sampled.peaks.core)
+    columns = {
+        "bubble radius": d.radius,
+        "rise time": d.rise,
+        "inlet pressure": d.inlet,
+        "oil temperature": d.temperature,
+        "discharge pressure": d.discharge,
+        "gas conductivity": d.conduction,
+    }
+    middle = np.array([np.median(v) for v in columns.values()])
+    rows = np.tile(middle, (2 * middle.size, 1))
+    for i, values in enumerate(columns.values()):
+        rows[2 * i, i], rows[2 * i + 1, i] = np.quantile(values, [0.05, 0.95])
+    r, rise, p1, t, p2, k = rows.T
+    core = bubble_batch(r, t, p1, p2, rise, hold=HOLD, oil=inputs.oil, conduction_factor=k).core
+    found = [
+        Influence(
+            name=name,
+            low=float(core[2 * i]),
+            high=float(core[2 * i + 1]),
+            share=float(np.corrcoef(_ranks(values), ranks)[0, 1] ** 2),
         )
-    return tuple(sorted(rows, key=lambda row: -row.share))
+        for i, (name, values) in enumerate(columns.items())
+    ]
+    return tuple(sorted(found, key=lambda row: -abs(row.high - row.low)))
 
 
 def _ranks(values: Floats) -> Floats:

@@ -50,6 +50,7 @@ def _above(before: float, after: float, limit: float, step: float) -> float:
 
 @njit(cache=True, nogil=True)
 def mean_temperature(n_gas: int, y: np.ndarray, mass: np.ndarray) -> float:
+    """Mass mean of the gas temperature [K]."""
     total, weight = 0.0, 0.0
     for i in range(n_gas):
         total += mass[i] * y[2 + i]
