@@ -59,7 +59,7 @@ def _tested(
     return NextTest(
         name=test.name,
         looks_at=test.looks_at,
-        information_bit=max(gain, 0.0),
+        information_bit=max(float(gain), 0.0),
         cost=test.cost,
         hours=test.hours,
         alters_evidence=test.alters_evidence,
