@@ -1,6 +1,5 @@
 """Evidence from the records, but for the inlet pressure itself (see ``from_suction``)."""
 
-from rca.base.source import Source
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
@@ -8,17 +7,14 @@ from rca.records.check import RecordCheck
 
 HOT = 343.15  # [K], 70 degC; bulk oil above it ages fast, common practice
 OVER = 1.10  # share of nominal speed or rated pressure that counts as beyond
-FAST_RISE = 3.0e-3  # [s]
-HIGH_RISE = 100e5  # [Pa]
 
 
 def from_records(
     case: Case, check: RecordCheck, aligned: AlignedRecord | None
 ) -> tuple[EvidenceItem | NotAssessed, ...]:
-    """Items on speed, pressure, temperature and the rise of the pressure."""
+    """Items on speed and temperature; pressure above rating and its rise are ``from_discharge``'s."""
     duty = check.duty
     speed = case.pump.maximum_speed or case.pump.speed
-    rating = case.pump.relief_pressure or case.pump.discharge_pressure
     return (
         _level(
             "overspeed",
@@ -31,16 +27,6 @@ def from_records(
             1.0,
         ),
         _level(
-            "overpressure",
-            Node.OVERPRESSURE,
-            duty.discharge_p95 if duty else None,
-            rating.value * OVER if rating else None,
-            "discharge pressure",
-            "bar(a)",
-            aligned,
-            1e-5,
-        ),
-        _level(
             "bulk_hot",
             Node.BULK_HOT,
             duty.temperature_p95 if duty else None,
@@ -51,7 +37,6 @@ def from_records(
             1.0,
         ),
         _worse_cold(check, aligned),
-        _rise(check),
     )
 
 
@@ -107,34 +92,4 @@ def _worse_cold(check: RecordCheck, aligned: AlignedRecord | None) -> EvidenceIt
         common_cause="sensor of the inlet pressure",
         basis=Basis.MEASURED,
         absent=not worse,
-    )
-
-
-def _rise(check: RecordCheck) -> EvidenceItem | NotAssessed:
-    rises = [
-        b for b in check.bursts if b.quantity == "discharge pressure" and b.rise_time is not None
-    ]
-    if not rises:
-        return NotAssessed(
-            key="record.rise",
-            node=Node.FAST_PRESSURE_RISE,
-            missing="a fast record of the discharge pressure over a pressure rise",
-        )
-    one = min(rises, key=lambda b: b.rise_time or 1.0)
-    assert one.rise_time is not None and one.rise_size is not None  # noqa: PT018
-    fast = one.rise_time < FAST_RISE and one.rise_size > HIGH_RISE
-    return EvidenceItem(
-        key="record.rise",
-        node=Node.FAST_PRESSURE_RISE,
-        likelihood={"no": 0.15, "yes": 0.85} if fast else {"no": 0.7, "yes": 0.4},
-        statement=(
-            f"Fastest 10 to 90 % rise of the discharge pressure: {one.rise_time * 1e3:.2f} ms over "
-            f"{one.rise_size / 1e5:.0f} bar at {one.rate_hz / 1e3:.0f} kHz"
-            f"{'' if one.rise_resolved else '; the sampling does not resolve it'}."
-        ),
-        sources=(Source(file=one.source.file, locator=one.source.locator),),
-        group=Group.COMPRESSION,
-        common_cause="fast record of the discharge pressure",
-        basis=Basis.MEASURED,
-        absent=not fast,
     )

@@ -153,7 +153,9 @@ def _summary(
     record: RecordFile, time: FloatArray, bad_stamps: int, backward: int, bad: dict[str, int]
 ) -> FileSummary:
     steps = np.diff(time)
-    interval = float(np.median(steps)) if steps.size else 0.0
+    # differences of epoch seconds hold only 0.2 us; a stated rate is exact
+    stated = record.time.rate_hz if not record.time.column else None
+    interval = 1.0 / stated if stated else float(np.median(steps)) if steps.size else 0.0
     places = (
         np.flatnonzero(steps > GAP_INTERVALS * interval) if interval > 0 else np.array([], int)
     )
