@@ -151,8 +151,8 @@ def _populations(rows: tuple[Population, ...]) -> Table:
         ),
         note=(
             "Radius at the inlet; 5 to 95 % of the sampled bubbles. Bubbles that overtake the "
-            "line pressure collapse by inertia and get hotter than the line pressure alone would make "
-            "them, for microseconds."
+            "line pressure collapse by inertia and get hotter than the line pressure alone makes "
+            "them."
         ),
     )
 

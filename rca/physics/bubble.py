@@ -86,7 +86,7 @@ class BubbleHistory:
 
 
 @cache
-def _gas_table() -> Floats:
+def gas_table() -> Floats:
     """Rows cp [J/(kg K)] and k [W/(m K)] of air at every 5 K from 200 K to 6000 K."""
     t = np.arange(200.0, T_MAX + 1e-6, 5.0)
     return np.ascontiguousarray(np.vstack([air_heat_capacity(t), dilute_air_conductivity(t)]))
@@ -113,7 +113,7 @@ def _check(values: dict[str, npt.ArrayLike]) -> None:
             raise OutOfRangeError(f"the bubble model needs {name} finite and > 0; got {value!r}")
 
 
-def _parameters(
+def parameter_rows(
     radius: npt.ArrayLike,
     temperature: npt.ArrayLike,
     oil: OilSide,
@@ -205,7 +205,7 @@ def bubble_history(
     _check({"line pressure [Pa abs]": p})
     liquid = oil or OilSide()
     end = ramp_end if ramp_end is not None else float(t[max(int(np.argmax(p)), 1)])
-    pars = _parameters(
+    pars = parameter_rows(
         radius, temperature, liquid, conduction_factor=conduction_factor,
         delay_factor=delay_factor, stop_below=stop_below, tolerance=tolerance, ramp_end=end,
         stop_at_ignition=False,
@@ -216,7 +216,7 @@ def bubble_history(
     outs, rows = np.zeros((1, 14)), np.empty((2000, 6))
     chart = delays or never_ignites()
     count = bubble_kernel.run(
-        with_inertia, grid[0], grid[1], t, p, pars, _gas_table(), np.array(thresholds),
+        with_inertia, grid[0], grid[1], t, p, pars, gas_table(), np.array(thresholds),
         chart.log_delay, chart.frame, outs[0], rows, np.empty(sum(grid) + 2),
     )  # fmt: skip
     _refuse_failures(outs, pars[None, :])
@@ -269,7 +269,7 @@ def bubble_batch(
     if not np.all(np.isfinite(p2) & (p2 >= p1)):
         raise OutOfRangeError(f"bubble_batch needs finite p_end >= p_start; got {p_end=}")
     liquid = oil or OilSide()
-    pars = _parameters(
+    pars = parameter_rows(
         r, t0, liquid, conduction_factor=factor, delay_factor=delay, stop_below=stop_below,
         tolerance=tolerance, ramp_end=rise, stop_at_ignition=stop_at_ignition,
     )  # fmt: skip
@@ -282,16 +282,16 @@ def bubble_batch(
 
     def part(begin: int, end: int) -> None:
         bubble_kernel.run_batch(
-            fast, grid[0], grid[1], ramps, pars, _gas_table(), np.array(thresholds),
+            fast, grid[0], grid[1], ramps, pars, gas_table(), np.array(thresholds),
             chart.log_delay, chart.frame, outs, begin, end,
         )  # fmt: skip
 
-    _share(part, r.size, workers)
+    share(part, r.size, workers)
     _refuse_failures(outs, pars)
     return _peaks(outs, fast)
 
 
-def _share(part: Callable[[int, int], None], size: int, workers: int) -> None:
+def share(part: Callable[[int, int], None], size: int, workers: int) -> None:
     """Run ``part(begin, end)`` over the rows, here or in ``workers`` short-lived threads."""
     if workers <= 1 or size < 64:
         part(0, size)

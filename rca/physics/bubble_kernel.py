@@ -149,7 +149,7 @@ def _norm(inertial: bool, n_all: int, y: np.ndarray, new: np.ndarray, err: np.nd
     if inertial:
         e = err[0] / (0.3 * tol * max(y[0], new[0]))
         worst = e * e
-        speed = 0.01 * np.sqrt(p / par[P_OIL_DENSITY])
+        speed = np.sqrt(p / par[P_OIL_DENSITY])
         e = err[1] / (tol * (max(abs(y[1]), abs(new[1])) + speed))
         worst = max(worst, e * e)
     return float(np.sqrt(max(total, worst)))
