@@ -1,0 +1,305 @@
+"""Panels of the verdict: explanations, weight of evidence, causes, next tests."""
+
+from rca.base.panel import Column, FigureRef, Panel, Section, Table
+from rca.case.vocabulary import DISCHARGE_MECHANISMS, SUCTION_MECHANISMS
+from rca.figures.numbers import ratio, share
+from rca.verdict.explain import CHANCE, SCALE
+from rca.verdict.model import VerdictCheck
+
+LIMITS = (
+    "A verdict is an opinion with limits: the numbers of the knowledge file are judgement unless "
+    "marked otherwise, and have not been calibrated on failures of known cause.",
+    "Each item's weight is taken with all others in place; items of one bottle, sensor or "
+    "observer share the chance that what they rest on is unsound.",
+)
+
+
+def panels_verdict(check: VerdictCheck) -> Section:
+    """The section of the weighing."""
+    panels = [_explanations(check), _weight(check), _robust(check), _causes(check), _tests(check)]
+    return Section(stage="verdict", title="Weighing", panels=tuple(panels))
+
+
+def _explanations(check: VerdictCheck) -> Panel:
+    verdict = check.verdict
+    rows = []
+    for name, p in sorted(verdict.mechanisms.items(), key=lambda kv: -kv[1]):
+        side = (
+            "suction"
+            if name in SUCTION_MECHANISMS
+            else "discharge"
+            if name in DISCHARGE_MECHANISMS
+            else "neither"
+        )
+        ranked = sorted(check.evidence, key=lambda i: -i.by_mechanism[name])
+        up = [i.id for i in ranked if i.by_mechanism[name] > 1.2][:4]
+        down = [i.id for i in reversed(ranked) if i.by_mechanism[name] < 1 / 1.2][:4]
+        rows.append(
+            (
+                name,
+                side,
+                share(verdict.prior[name]),
+                share(p),
+                ", ".join(up) or "none",
+                ", ".join(down) or "none",
+            )
+        )
+    return Panel(
+        key="verdict.explanations",
+        title="Explanations considered",
+        question="Which mechanisms took part, and what speaks for and against each?",
+        answer=verdict.words.finding,
+        status=verdict.side,
+        paragraphs=(
+            f"Rule applied: {verdict.words.rule}.",
+            *(f"Contradiction in the evidence: {c}." for c in verdict.contradictions),
+        ),
+        tables=(
+            Table(
+                name="verdict-mechanisms",
+                title="Mechanisms",
+                columns=(
+                    Column(title="Mechanism"),
+                    Column(title="Side"),
+                    Column(title="Before", numeric=True),
+                    Column(title="After", numeric=True),
+                    Column(title="Strongest for"),
+                    Column(title="Strongest against"),
+                ),
+                rows=tuple(rows),
+                note="Probability that the mechanism took part; several can be true at once, so "
+                "the numbers need not add up to one. Before: among failed pumps, by judgement.",
+            ),
+        ),
+        figures=(
+            FigureRef(
+                name="verdict-mechanisms",
+                caption="Mechanisms before and after the evidence.",
+                alt=verdict.words.finding,
+            ),
+        ),
+        limits=LIMITS,
+    )
+
+
+def _weight(check: VerdictCheck) -> Panel:
+    rows = tuple(
+        (
+            i.id,
+            i.statement,
+            i.group,
+            f"{i.favours}" if i.favours != "neither way" else "neither way",
+            ratio(i.likelihood_ratio),
+            i.words,
+        )
+        for i in check.evidence
+    )
+    groups = tuple(
+        (g.group, ", ".join(g.items), _factor(g.suction_ratio), _factor(g.discharge_ratio))
+        for g in check.verdict.groups
+    )
+    figures = (
+        (
+            FigureRef(
+                name="verdict-items",
+                caption="What each item did to the odds of either side, all others in place.",
+                alt="The items that moved the odds most: "
+                + ", ".join(
+                    i.id for i in sorted(check.evidence, key=lambda i: -i.likelihood_ratio)[:3]
+                )
+                + ".",
+            ),
+            FigureRef(
+                name="verdict-matrix",
+                caption="Items by mechanisms: plus signs speak for, bars against; size is weight.",
+                alt="Matrix of evidence items against mechanisms.",
+            ),
+        )
+        if check.evidence
+        else ()
+    )
+    scale = "; ".join(f"to {int(top):,}: {words}".replace(",", "\u2009") for top, words in SCALE)
+    return Panel(
+        key="verdict.weight",
+        title="Weight of evidence",
+        question="What did each item contribute, and how strongly?",
+        answer=(
+            f"{len(check.evidence)} items weigh, in {len(check.verdict.groups)} groups."
+            if check.evidence
+            else "No item weighs; nothing was looked at."
+        ),
+        tables=(
+            Table(
+                name="evidence",
+                title="Items of evidence",
+                columns=(
+                    Column(title="Id"),
+                    Column(title="Finding"),
+                    Column(title="Group"),
+                    Column(title="Favours"),
+                    Column(title="Ratio", numeric=True),
+                    Column(title="In words"),
+                ),
+                rows=rows,
+                shown=60,
+                note=f"Ratio: odds with the item over odds without it. Words by ratio: {scale}; "
+                "above: extremely strong support.",
+            ),
+            Table(
+                name="verdict-groups",
+                title="Groups of evidence",
+                columns=(
+                    Column(title="Group"),
+                    Column(title="Items"),
+                    Column(title="Odds of suction", numeric=True),
+                    Column(title="Odds of discharge", numeric=True),
+                ),
+                rows=groups,
+                note="Factor on the odds when the whole group is left in, against left out.",
+            ),
+        )
+        if check.evidence
+        else (),
+        figures=figures,
+    )
+
+
+def _factor(x: float) -> str:
+    return f"\u00d7 {ratio(x)}" if x >= 1 else f"\u00f7 {ratio(1 / x)}"
+
+
+def _robust(check: VerdictCheck) -> Panel:
+    r = check.verdict.robustness
+    flip = ", ".join(r.flip_set) if r.flip_set else "none of up to three"
+    agrees = "agrees" if r.second_agrees else "does not agree"
+    rows = (
+        ("Same side over the draws", f"{100 * r.same_side:.0f} % of {r.draws}"),
+        ("Suction, 5 to 95 % of the draws", f"{share(r.suction.p05)} to {share(r.suction.p95)}"),
+        (
+            "Discharge, 5 to 95 % of the draws",
+            f"{share(r.discharge.p05)} to {share(r.discharge.p95)}",
+        ),
+        ("Smallest set of items whose removal changes the side", flip),
+        (
+            "Factor on the prior odds at which suction stands at 0.75",
+            _factor(r.prior_at_flip["suction"]),
+        ),
+        (
+            "Factor on the prior odds at which discharge stands at 0.75",
+            _factor(r.prior_at_flip["discharge"]),
+        ),
+        ("Second method (strongest item of each group)", f"{r.second_method}; {agrees}"),
+    )
+    return Panel(
+        key="verdict.robustness",
+        title="How far this could move",
+        question="What would change the verdict?",
+        answer=check.verdict.words.biggest_doubt,
+        tables=(
+            Table(
+                name="verdict-robustness",
+                title="Robustness",
+                columns=(Column(title="Question"), Column(title="Answer")),
+                rows=rows,
+                note="Draws: all numbers of the knowledge file varied together between their low "
+                "and high values.",
+            ),
+        ),
+    )
+
+
+def _causes(check: VerdictCheck) -> Panel:
+    shown = [c for c in check.causes if c.probability >= 0.02 or c.cause == "unknown"]
+    top = shown[0] if shown else None
+    return Panel(
+        key="verdict.causes",
+        title="Root causes",
+        question="What let it start?",
+        answer=(
+            f"Most probable: {top.cause} (probability {share(top.probability)})."
+            if top is not None and top.probability >= 0.4
+            else "No root cause stands out."
+        ),
+        tables=(
+            Table(
+                name="causes",
+                title="Causes by probability",
+                columns=(
+                    Column(title="Cause"),
+                    Column(title="Probability", numeric=True),
+                    Column(title="Evidence for"),
+                    Column(title="Evidence against"),
+                ),
+                rows=tuple(
+                    (
+                        c.cause,
+                        share(c.probability),
+                        ", ".join(c.evidence) or "none of its own",
+                        ", ".join(c.against) or "none",
+                    )
+                    for c in shown
+                ),
+                note="Several causes can be present at once. 'unknown' is the probability that "
+                "none of the named causes was present.",
+            ),
+        ),
+        limits=(f"Words for probabilities: {_chance_words()}.",),
+    )
+
+
+def _chance_words() -> str:
+    parts, low = [], 0.0
+    for top, words in CHANCE:
+        parts.append(f"{low:.3g} to {min(top, 1.0):.3g} {words}")
+        low = top
+    return "; ".join(parts)
+
+
+def _tests(check: VerdictCheck) -> Panel:
+    tests = check.verdict.next_tests
+    useful = [t for t in tests if t.could_change_side]
+    if not tests:
+        answer = "Every test this program knows was done."
+    elif useful:
+        answer = f"Next best test: {useful[0].name}."
+    else:
+        answer = "No single remaining test would change the side; the first ones perish soonest."
+    return Panel(
+        key="verdict.tests",
+        title="Next best tests",
+        question="Which test, not done yet, would tell most for its cost?",
+        answer=answer,
+        tables=(
+            Table(
+                name="next-tests",
+                title="Tests not done yet",
+                columns=(
+                    Column(title="Test"),
+                    Column(title="Tells", unit="bit", numeric=True),
+                    Column(title="Cost", unit="EUR", numeric=True),
+                    Column(title="Takes", unit="h", numeric=True),
+                    Column(title="Alters evidence"),
+                    Column(title="Perishes"),
+                    Column(title="If found: suction / discharge"),
+                    Column(title="If absent: suction / discharge"),
+                ),
+                rows=tuple(
+                    (
+                        t.name,
+                        f"{t.information_bit:.3f}",
+                        f"{t.cost:.0f}",
+                        f"{t.hours:.0f}",
+                        "yes" if t.alters_evidence else "no",
+                        "does not" if t.perishes_days > 1000 else f"in {t.perishes_days:.0f} d",
+                        f"{share(t.if_found['suction'])} / {share(t.if_found['discharge'])}",
+                        f"{share(t.if_absent['suction'])} / {share(t.if_absent['discharge'])}",
+                    )
+                    for t in tests[:10]
+                ),
+                note="Perishable and harmless tests stand first, then information for cost and "
+                "time. Costs and hours are judgement.",
+            ),
+        )
+        if tests
+        else (),
+    )
