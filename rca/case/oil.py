@@ -19,6 +19,9 @@ class OilValue:
     unit: str
     text: str
     source: Source
+    basis: str = ""  # mass, volume, count; as far as the report says
+    method: str = ""  # as written, e.g. "ASTM D664"
+    note: str = ""  # what the reader did to the text: unit converted, mark stripped, ...
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -35,6 +38,12 @@ class OilSample:
     values: dict[str, OilValue] = field(default_factory=dict)
     excluded: str = ""  # the reason, where it is set aside on purpose
     source: Source = field(default_factory=lambda: Source(file="", locator=""))
+    received: date | None = None
+    reported: date | None = None
+    revision: int = 0
+    retest: int = 0  # 1, 2, ... for repeated tests of one bottle
+    top_up: float | None = None  # [m3] added since the sample before, where the report says
+    fluid: str = ""
 
     def get(self, name: str) -> float | None:
         """The number of an uncensored result, else None."""

@@ -1,57 +1,19 @@
-"""The oil reports judged: latest sample against limits and new oil, trends of the last fill."""
+"""The oil reports judged: latest sample against limits and new oil, trends of every fill."""
 
-import tomllib
-from dataclasses import dataclass
+from collections import defaultdict
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from datetime import date
-from functools import cache
-from importlib.resources import files
 
-from rca.base.errors import OutOfRangeError
-from rca.base.source import Source
 from rca.case.model import Case
-from rca.case.oil import OilSample, OilValue
-from rca.oil.precision import certain, reproducibility
-from rca.stats.trend import mann_kendall, theil_sen
-
-LEAST_FOR_TREND = 5
-ALPHA = 0.05
-OIL_CHANGE_KINDS = ("oil change", "oil changed", "fluid change")
-LAB_CHANGE_KINDS = ("laboratory change", "lab change")
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Limit:
-    """One limit with its basis, source and flag."""
-
-    property: str
-    direction: str
-    value: float
-    source: str
-    flag: str
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Judged:
-    """The latest result of one property of the last fill."""
-
-    property: str
-    unit: str
-    text: str
-    op: str
-    value: float
-    sample: str
-    sampled: date | None
-    source: Source
-    new: float | None  # of the new oil, same property
-    change: float | None  # from new, in the unit
-    noise: float  # R at this level
-    stands_out: float | None  # change / R; 1 is the edge of chance
-    last_step: float | None  # change since the earlier sample of this fill, over R
-    beyond: tuple[str, ...]  # limits crossed, in words
-    trend_p: float | None  # two-sided probability of a trend by chance
-    trend_per_1000h: float | None
-    trend_real: bool  # p below ALPHA and the change over the fill larger than R
-    points: int
+from rca.case.oil import OilSample, OilValue, UnreadCell
+from rca.oil.darkening import Darkening, darkening_of
+from rca.oil.fills import OilEvent, OilLife, oil_life
+from rca.oil.judge import Judged, judge
+from rca.oil.limits import Limit, limits_for, merged, shipped_limits
+from rca.oil.precision import certain, site_precision
+from rca.oil.reference import new_oil_sample, reference_of
+from rca.oil.trends import Row, Trend, trend_of
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -59,6 +21,7 @@ class Point:
     """One plotted result."""
 
     property: str
+    sample: str
     sampled: date
     hours: float | None
     value: float
@@ -70,183 +33,209 @@ class Point:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class OilCheck:
-    """The oil of a case."""
+    """The oil of a case at one sample point."""
 
     samples: int
+    point: str  # the sample point judged
+    other_points: tuple[str, ...]  # points with fewer samples, listed and not mixed in
     excluded: tuple[tuple[str, str], ...]  # (sample, reason)
-    unread: int
+    undated: tuple[str, ...]  # samples without a usable day of sampling
+    unread: tuple[UnreadCell, ...]
     latest: str  # id of the latest sample
     latest_date: date | None
     previous_date: date | None
+    days_before_failure: int | None  # of the latest sample; negative: drawn after it
+    oil_hours: float | None  # of the latest sample
     reference: str  # id of the new-oil sample, "" where there is none
     fills: tuple[date, ...]  # first days of fills after the first
     laboratory_changes: tuple[date, ...]
+    events: tuple[OilEvent, ...]
     judged: dict[str, Judged]
+    darkening: Darkening | None
+    trends: tuple[Trend, ...]  # of every fill
     points: tuple[Point, ...]
+    fluid_class: str  # "" where case.toml does not say
 
 
-@cache
-def limits() -> tuple[Limit, ...]:
-    """The shipped limits."""
-    text = files("rca.oil").joinpath("limits.toml").read_text(encoding="utf-8")
-    return tuple(Limit(**row) for row in tomllib.loads(text)["limit"])
+def check_oil(
+    case: Case,
+    samples: Sequence[OilSample],
+    *,
+    unread: Sequence[UnreadCell] = (),
+    site_limits: Sequence[Limit] = (),
+) -> OilCheck | None:
+    """Judge the oil; None where no usable sample is on record.
 
-
-def check_oil(case: Case, samples: tuple[OilSample, ...], *, unread: int = 0) -> OilCheck | None:
-    """Judge the oil; None where no usable sample is on record."""
-    used = [s for s in samples if not s.excluded and not s.new_oil and s.sampled is not None]
-    if not used:
+    Samples set aside are shown and not judged. Several sample points are never mixed: the point
+    with the most samples is judged.
+    """
+    dated = [s for s in samples if s.sampled is not None and not s.new_oil]
+    usable = [s for s in dated if not s.excluded]
+    if not usable:
         return None
-    fills = _days(case, OIL_CHANGE_KINDS)
-    labs = _lab_changes(case, used)
-    reference = _reference(samples)
-    last_fill = [s for s in used if _fill(s.sampled, fills) == _fill(used[-1].sampled, fills)]
-    names = sorted({name for s in last_fill for name in s.values})
-    judged = {
-        name: one
-        for name in names
-        if (one := _judge(name, last_fill, reference, labs)) is not None
-    }
+    point, others = _main_point(usable)
+    used = _one_a_bottle(sorted((s for s in usable if s.point == point), key=_when))
+    life = oil_life(case, used)
+    rows = _rows(used, life)
+    reference = new_oil_sample(samples)
+    limits = merged(shipped_limits(), tuple(site_limits))
+    fluid = case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
+    trends = _trends(case, rows, reference, life, used)
+    judged = _judged(case, rows, reference, limits, fluid, trends, usable)
+    last = used[-1]
+    failed = case.header.occurred.date() if case.header.occurred is not None else None
+    before = [s for s, p in zip(used, life.places, strict=True) if p.fill == life.places[-1].fill]
     return OilCheck(
         samples=len(samples),
+        point=point,
+        other_points=others,
         excluded=tuple((s.id, s.excluded) for s in samples if s.excluded),
-        unread=unread,
-        latest=used[-1].id,
-        latest_date=used[-1].sampled,
-        previous_date=last_fill[-2].sampled if len(last_fill) > 1 else None,
+        undated=tuple(s.id for s in samples if s.sampled is None and not s.new_oil),
+        unread=tuple(unread),
+        latest=last.id,
+        latest_date=last.sampled,
+        previous_date=before[-2].sampled if len(before) > 1 else None,
+        days_before_failure=(failed - last.sampled).days if failed and last.sampled else None,
+        oil_hours=life.places[-1].oil_hours,
         reference=reference.id if reference is not None else "",
-        fills=tuple(fills),
-        laboratory_changes=tuple(labs),
+        fills=life.days("oil change"),
+        laboratory_changes=life.days("laboratory change"),
+        events=life.events,
         judged=judged,
-        points=_points(samples, fills),
+        darkening=_darkening(case, rows, reference, life),
+        trends=trends,
+        points=_points(dated, point, life, used),
+        fluid_class=fluid or "",
     )
 
 
-def _judge(
-    name: str, fill: list[OilSample], reference: OilSample | None, labs: list[date]
-) -> Judged | None:
-    rows = [(s, s.values[name]) for s in fill if name in s.values]
-    if not rows:
-        return None
-    sample, value = rows[-1]
-    new_value = reference.values.get(name) if reference is not None else None
-    new = certain(new_value)
-    noise = reproducibility(
-        name, max(abs(value.value), abs(new or 0.0)) * 0.5 + 0.5 * abs(value.value)
-    )
-    change = value.value - new if new is not None and value.op in ("=", "~", ">") else None
-    same_lab = [(s, v) for s, v in rows if _fill(s.sampled, labs) == _fill(sample.sampled, labs)]
-    p, slope, real = _trend(name, same_lab)
-    earlier = certain(same_lab[-2][1]) if len(same_lab) > 1 else None
-    return Judged(
-        property=name,
-        unit=value.unit,
-        text=value.text,
-        op=value.op,
-        value=value.value,
-        sample=sample.id,
-        sampled=sample.sampled,
-        source=value.source,
-        new=new,
-        change=change,
-        noise=noise,
-        stands_out=change / noise if change is not None and noise > 0 else None,
-        last_step=(value.value - earlier) / noise if earlier is not None and noise > 0 else None,
-        beyond=tuple(_crossed(name, value, new)),
-        trend_p=p,
-        trend_per_1000h=slope,
-        trend_real=real,
-        points=len(same_lab),
-    )
+def _main_point(samples: Sequence[OilSample]) -> tuple[str, tuple[str, ...]]:
+    counts: dict[str, int] = defaultdict(int)
+    for sample in samples:
+        counts[sample.point] += 1
+    names = sorted(counts, key=lambda name: (-counts[name], name))
+    return names[0], tuple(names[1:])
 
 
-def _crossed(name: str, value: OilValue, new: float | None) -> list[str]:
-    words = []
-    x = value.value
-    if value.op == "<":
-        return []
-    for limit in (one for one in limits() if one.property == name):
-        rise = x - new if new is not None else None
-        share = 100.0 * rise / new if rise is not None and new else None
-        crossed = {
-            "above": x > limit.value,
-            "below": x < limit.value,
-            "rise": rise is not None and rise >= limit.value,
-            "fall": rise is not None and -rise >= limit.value,
-            "rise %": share is not None and share > limit.value,
-            "fall %": share is not None and -share > limit.value,
-        }[limit.direction]
-        if crossed:
-            words.append(f"{limit.direction} {limit.value:g} ({limit.source}; {limit.flag})")
-    return words
+def _one_a_bottle(samples: Sequence[OilSample]) -> list[OilSample]:
+    """A re-test of one bottle stands once: the last one."""
+    kept: dict[tuple[str, date | None], OilSample] = {}
+    for sample in samples:
+        kept[sample.id, sample.sampled] = sample
+    return list(kept.values())
 
 
-def _trend(
-    name: str, rows: list[tuple[OilSample, OilValue]]
-) -> tuple[float | None, float | None, bool]:
-    """Trend on hours where every sample has them, else on days counted as 24 h."""
-    points = [(s, v.value) for s, v in rows if v.op in ("=", "~")]
-    if len(points) < LEAST_FOR_TREND:
-        return None, None, False
-    values = tuple(v for _, v in points)
-    hours = [s.machine_hours for s, _ in points]
-    if all(h is not None for h in hours) and all(
-        a < b for a, b in zip(hours, hours[1:], strict=False) if a is not None and b is not None
-    ):
-        times = tuple(float(h) for h in hours if h is not None)
-    else:
-        times = tuple(s.sampled.toordinal() * 24.0 for s, _ in points if s.sampled is not None)
-    try:
-        test = mann_kendall(values)
-        slope, _ = theil_sen(times, values)
-    except OutOfRangeError:
-        return None, None, False
-    over = abs(slope) * (times[-1] - times[0])
-    level = sum(values) / len(values)
-    real = test.p_two_sided < ALPHA and over > reproducibility(name, level)
-    return test.p_two_sided, slope * 1000.0, real
+def _rows(used: Sequence[OilSample], life: OilLife) -> dict[tuple[int, str], list[Row]]:
+    rows: dict[tuple[int, str], list[Row]] = defaultdict(list)
+    for sample, place in zip(used, life.places, strict=True):
+        for name, value in sorted(_with_scale_of_14(sample.values).items()):
+            rows[place.fill, name].append(Row(sample=sample, value=value, place=place))
+    return rows
 
 
-def _points(samples: tuple[OilSample, ...], fills: list[date]) -> tuple[Point, ...]:
+def _with_scale_of_14(values: dict[str, OilValue]) -> dict[str, OilValue]:
+    """The third number of a cleanliness code as a property of its own."""
+    code = values.get("cleanliness_code")
+    numbers = code.text.split("/") if code is not None else []
+    if code is None or len(numbers) != 3 or not numbers[2].strip("≥>").isdigit():
+        return values
+    third = replace(code, property="cleanliness_14", value=float(numbers[2].strip("≥>")))
+    return values | {"cleanliness_14": third}
+
+
+def _trends(
+    case: Case,
+    rows: dict[tuple[int, str], list[Row]],
+    reference: OilSample | None,
+    life: OilLife,
+    used: Sequence[OilSample],
+) -> tuple[Trend, ...]:
+    top_ups = [e for e in life.events if e.kind == "top-up"]
+    volume = case.reservoir.oil_volume.value if case.reservoir.oil_volume is not None else None
+    trends = []
+    for (_, name), of_property in sorted(rows.items()):
+        new = reference_of(name, case, reference, used)
+        trends.append(
+            trend_of(
+                name,
+                of_property,
+                top_ups=top_ups,
+                volume=volume,
+                new=new.value if new is not None else None,
+            )
+        )
+    return tuple(trends)
+
+
+def _judged(
+    case: Case,
+    rows: dict[tuple[int, str], list[Row]],
+    reference: OilSample | None,
+    limits: tuple[Limit, ...],
+    fluid: str | None,
+    trends: tuple[Trend, ...],
+    usable: Sequence[OilSample],
+) -> dict[str, Judged]:
+    last_fill = max(fill for fill, _ in rows)
+    found = {}
+    for (fill, name), of_property in sorted(rows.items()):
+        if fill != last_fill:
+            continue
+        found[name] = judge(
+            name,
+            of_property,
+            reference_of(name, case, reference, [row.sample for row in of_property]),
+            limits_for(limits, name, fluid),
+            next((t for t in trends if t.fill == fill and t.property == name), None),
+            site=_site(name, usable),
+        )
+    return found
+
+
+def _darkening(
+    case: Case,
+    rows: dict[tuple[int, str], list[Row]],
+    reference: OilSample | None,
+    life: OilLife,
+) -> Darkening | None:
+    fill = max(number for number, _ in rows)
+    colours = rows.get((fill, "colour"), [])
+    new = reference_of("colour", case, reference, [row.sample for row in colours])
+    changes = life.days("oil change")
+    return darkening_of(colours, new, changes[fill - 1] if fill else None)
+
+
+def _site(name: str, samples: Sequence[OilSample]) -> float | None:
+    """R' from bottles tested twice or more."""
+    by_bottle: dict[tuple[str, date | None], list[float]] = defaultdict(list)
+    for sample in samples:
+        value = certain(sample.values.get(name))
+        if value is not None:
+            by_bottle[sample.id, sample.sampled].append(value)
+    return site_precision([(v[0], v[1]) for v in by_bottle.values() if len(v) > 1])
+
+
+def _points(
+    samples: Sequence[OilSample], point: str, life: OilLife, used: Sequence[OilSample]
+) -> tuple[Point, ...]:
+    fills = {s.id: p.fill for s, p in zip(used, life.places, strict=True)}
     return tuple(
         Point(
             property=name,
+            sample=s.id,
             sampled=s.sampled,
             hours=s.machine_hours,
             value=v.value,
             op=v.op,
             laboratory=s.laboratory,
-            fill=_fill(s.sampled, fills),
+            fill=fills.get(s.id, -1),
             excluded=bool(s.excluded),
         )
-        for s in samples
-        if s.sampled is not None and not s.new_oil
+        for s in sorted(samples, key=_when)
+        if s.sampled is not None and s.point == point
         for name, v in sorted(s.values.items())
     )
 
 
-def _reference(samples: tuple[OilSample, ...]) -> OilSample | None:
-    new = [s for s in samples if s.new_oil and not s.excluded]
-    return new[-1] if new else None
-
-
-def _days(case: Case, kinds: tuple[str, ...]) -> list[date]:
-    return sorted(
-        e.when if type(e.when) is date else e.when.date()  # type: ignore[union-attr]
-        for e in case.history
-        if e.kind.casefold().strip() in kinds
-    )
-
-
-def _lab_changes(case: Case, used: list[OilSample]) -> list[date]:
-    changes = set(_days(case, LAB_CHANGE_KINDS))
-    for one, other in zip(used, used[1:], strict=False):
-        if one.laboratory != other.laboratory and other.sampled is not None:
-            earlier = [c for c in changes if one.sampled and one.sampled <= c <= other.sampled]
-            if not earlier:
-                changes.add(other.sampled)
-    return sorted(changes)
-
-
-def _fill(day: date | None, changes: list[date]) -> int:
-    return sum(day is not None and day >= change for change in changes)
+def _when(sample: OilSample) -> tuple[date, int, int]:
+    return sample.sampled or date.min, sample.revision, sample.retest

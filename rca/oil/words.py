@@ -15,6 +15,7 @@ _LABELS = {
     "oxidation_life": "Oxidation life (pressure vessel)",
     "ferrous_index": "Ferrous index",
     "cleanliness_code": "Cleanliness, ≥6 µm scale number",
+    "cleanliness_14": "Cleanliness, ≥14 µm scale number",
     "particles_4": "Particles ≥4 µm(c)",
     "particles_6": "Particles ≥6 µm(c)",
     "particles_14": "Particles ≥14 µm(c)",

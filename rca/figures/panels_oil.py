@@ -1,0 +1,421 @@
+"""The oil section of the report: latest sample, trends, what could not be read."""
+
+from rca.base.panel import Column, FigureRef, Panel, Section, Table
+from rca.case.model import Case
+from rca.figures.oil import CHEMISTRY, WEAR, shown_properties
+from rca.oil.check import OilCheck
+from rca.oil.judge import Judged
+from rca.oil.trends import LEAST, Trend
+from rca.oil.words import property_name, unit_text
+
+TITLE = "Oil analysis"
+ROUTINE_NOTE = (
+    "Routine values that stay flat do not show that no combustion of bubbles and no spark "
+    "discharge took place: viscosity, acid number and infrared oxidation usually miss both."
+)
+
+
+def panels_oil(case: Case, check: OilCheck | None) -> Section:
+    """The panels of the oil section; one panel that says so where there is no usable sample."""
+    if check is None:
+        return Section(stage="oil", title=TITLE, panels=(_nothing(case),))
+    panels = [_latest(check), _trends(check)]
+    if check.excluded or check.unread or check.undated or check.other_points:
+        panels.append(_left_out(check))
+    panels.append(_precision(check))
+    return Section(stage="oil", title=TITLE, panels=tuple(panels))
+
+
+def _nothing(case: Case) -> Panel:
+    named = ", ".join(one.file for one in case.oil_reports)
+    answer = (
+        f"No usable sample could be read from {named}."
+        if named
+        else "The case folder holds no laboratory report of the oil."
+    )
+    return Panel(
+        key="oil.none",
+        title="Oil samples",
+        question="What does the oil show?",
+        answer=f"{answer} The oil was not looked at; that weighs neither way.",
+        status="not assessed",
+    )
+
+
+def _latest(check: OilCheck) -> Panel:
+    beyond = [one for one in check.judged.values() if one.beyond()]
+    out = [
+        one
+        for one in check.judged.values()
+        if one.stands_out is not None and abs(one.stands_out) >= 1.0
+    ]
+    rows = [_latest_row(one) for one in _ordered(check)]
+    answer = _latest_answer(check, beyond, out)
+    return Panel(
+        key="oil.latest",
+        title="The latest sample against limits and new oil",
+        question="Does the oil differ from new oil by more than the tests scatter?",
+        answer=answer,
+        status="beyond" if beyond else "within",
+        paragraphs=tuple(p for p in (_timing(check), _darkening(check), ROUTINE_NOTE) if p),
+        tables=(
+            Table(
+                name="oil-latest",
+                title=f"Sample {check.latest} of {check.latest_date}",
+                columns=(
+                    Column(title="Property"),
+                    Column(title="Result", numeric=True),
+                    Column(title="Unit"),
+                    Column(title="New", numeric=True),
+                    Column(title="Change", numeric=True),
+                    Column(title="Noise floor", numeric=True),
+                    Column(title="Limit"),
+                    Column(title="Judged"),
+                ),
+                rows=tuple(row for row, _ in rows),
+                marks=tuple(mark for _, mark in rows),
+                note=(
+                    "The noise floor is R of the method at this level, widened where the value "
+                    "for new oil is not measured. A change inside it is no change."
+                ),
+            ),
+            _limits_table(check),
+        ),
+        limits=_latest_limits(check),
+    )
+
+
+def _latest_answer(check: OilCheck, beyond: list[Judged], out: list[Judged]) -> str:
+    changed = ", ".join(
+        f"{property_name(one.property)} {one.change:+.3g} {unit_text(one.unit)}".strip()
+        for one in out[:6]
+        if one.change is not None
+    )
+    first = (
+        f"{len(beyond)} of {len(check.judged)} properties pass a limit"
+        f" ({', '.join(property_name(one.property) for one in beyond)})."
+        if beyond
+        else f"None of {len(check.judged)} properties passes a limit."
+    )
+    second = (
+        f"Beyond the scatter of the tests: {changed}."
+        if changed
+        else "No property differs from new oil by more than its test scatters."
+    )
+    return f"{first} {second}"
+
+
+def _latest_row(one: Judged) -> tuple[tuple[str, ...], str]:
+    beyond = any(c.crossed for c in one.crossings)
+    outside = one.stands_out is not None and abs(one.stands_out) >= 1.0
+    if beyond:
+        word, mark = "beyond limit", "beyond"
+    elif outside:
+        word, mark = "changed", "near"
+    elif one.stands_out is None:
+        word, mark = ("nothing to compare" if one.new is None else "limit of detection"), ""
+    else:
+        word, mark = "no change shown", ""
+    return (
+        property_name(one.property),
+        one.text,
+        unit_text(one.unit),
+        f"{one.new:.4g}" if one.new is not None else "–",
+        f"{one.change:+.3g}" if one.change is not None else "–",
+        f"{one.noise:.2g}",
+        "; ".join(c.words for c in one.crossings) or "none known",
+        word,
+    ), mark
+
+
+def _limits_table(check: OilCheck) -> Table:
+    rows, marks = [], []
+    for one in _ordered(check):
+        for c in one.crossings:
+            state = {True: "passed", False: "kept", None: "can't be told"}[c.crossed]
+            rows.append((property_name(one.property), c.words, c.basis, state, c.source, c.flag))
+            marks.append("beyond" if c.crossed else "")
+    return Table(
+        name="oil-limits",
+        title="Limits applied, with their sources",
+        columns=tuple(
+            Column(title=t) for t in ("Property", "Limit", "Basis", "State", "Source", "Known how")
+        ),
+        rows=tuple(rows),
+        marks=tuple(marks),
+        note="A limit is a warning level to be read with the trend, not proof of a fault.",
+    )
+
+
+def _latest_limits(check: OilCheck) -> tuple[str, ...]:
+    said = []
+    if not check.reference:
+        said.append(
+            "No new-oil sample is on record; values of case.toml or usual values stand in, with "
+            "a wider noise floor. Changes err towards not shown."
+        )
+    if check.fluid_class not in ("mineral", "PAO", ""):
+        said.append(
+            "Most published limits are for mineral oil and were not applied to "
+            f"{check.fluid_class}."
+        )
+    if not check.fluid_class:
+        said.append("The class of fluid is not stated; limits for mineral oil were applied.")
+    return tuple(said)
+
+
+def _timing(check: OilCheck) -> str:
+    parts = []
+    if check.days_before_failure is not None:
+        days = check.days_before_failure
+        parts.append(
+            f"The sample was drawn {days} days before the failure."
+            if days >= 0
+            else f"The sample was drawn {-days} days after the failure."
+        )
+    if check.oil_hours is not None:
+        parts.append(f"The oil had run {check.oil_hours:.0f} h.")
+    if check.point:
+        parts.append(f"Sample point: {check.point}.")
+    return " ".join(parts)
+
+
+def _darkening(check: OilCheck) -> str:
+    dark = check.darkening
+    if dark is None:
+        return "The colour of the oil is not on record."
+    change = (
+        f"Colour {dark.text} (ASTM D1500) against {dark.new:g} ({dark.new_from}): "
+        f"{dark.change:+.1f} units."
+    )
+    if dark.step_days is not None:
+        since = "the oil change" if dark.step_from == "fill" else f"sample {dark.step_from}"
+        return f"{change} Most of it came within {dark.step_days} days after {since}."
+    if dark.gradual:
+        return f"{change} It came gradually over {dark.points} samples."
+    return change
+
+
+def _trends(check: OilCheck) -> Panel:
+    last = max(t.fill for t in check.trends)
+    of_last = [t for t in check.trends if t.fill == last]
+    moving = [t for t in of_last if t.verdict in ("rises", "falls")]
+    tested = [t for t in of_last if t.verdict not in ("too few results", "not testable")]
+    if moving:
+        words = "; ".join(_trend_words(t) for t in moving[:5])
+        answer = f"On the last fill {words}."
+    elif tested:
+        answer = (
+            f"On the last fill no trend beyond chance and R is shown in {len(tested)} properties."
+        )
+    else:
+        answer = f"The last fill has too few results for a trend (fewer than {LEAST} a property)."
+    return Panel(
+        key="oil.trends",
+        title="Trends over the running hours",
+        question="What moved over the life of this oil?",
+        answer=answer,
+        status="supported" if moving else "not shown",
+        paragraphs=_trend_paragraphs(check, of_last),
+        tables=(_trend_table(check),),
+        figures=_figures(check),
+        limits=(
+            "Mann-Kendall test, exact where small; Theil-Sen slope on hours; pairs are compared "
+            "inside one fill and one laboratory only. A trend is shown only where its two-sided "
+            "probability by chance is under 0.05 and its change over the fill exceeds R.",
+            "Results below a limit of detection are kept as limits and ordered as far as they "
+            "can be; nothing is put in their place.",
+        ),
+    )
+
+
+def _trend_words(trend: Trend) -> str:
+    rate = f"{abs(trend.per_1000h or 0.0):.2g} {unit_text(trend.unit)}".strip()
+    chance = f"p = {trend.p:.2g}" if trend.p is not None else ""
+    return f"{property_name(trend.property)} {trend.verdict} by {rate} per 1000 h ({chance})"
+
+
+def _trend_paragraphs(check: OilCheck, trends: list[Trend]) -> tuple[str, ...]:
+    said = [
+        f"{e.when}: {e.kind} ({e.known_from})."
+        for e in check.events
+        if e.kind in ("oil change", "laboratory change", "hour meter set back")
+    ]
+    paragraphs = []
+    if said:
+        paragraphs.append("The series is split at known events. " + " ".join(said))
+    flagged = [
+        f"{property_name(t.property)} in {', '.join(t.outliers)}" for t in trends if t.outliers
+    ]
+    if flagged:
+        paragraphs.append(
+            "Results far from their line are flagged and kept; they need a re-test or a reason: "
+            + "; ".join(flagged)
+            + "."
+        )
+    steps = [
+        f"{property_name(t.property)} {t.laboratory_step:+.2g}"
+        for t in trends
+        if t.laboratory_step is not None and abs(t.laboratory_step) > t.noise
+    ]
+    if steps:
+        paragraphs.append(
+            "Between laboratories the level shifts by more than R: " + "; ".join(steps) + "."
+        )
+    hints = [
+        f"{property_name(t.property)} after {t.change_after} (p = {t.change_p:.2g})"
+        for t in trends
+        if t.change_after and t.change_p is not None
+    ]
+    if hints:
+        paragraphs.append(
+            "Changes of level found by search, exploratory: " + "; ".join(hints) + "."
+        )
+    return tuple(paragraphs)
+
+
+def _trend_table(check: OilCheck) -> Table:
+    rows = [_trend_row(t) for t in sorted(check.trends, key=lambda t: (-t.fill, t.property))]
+    return Table(
+        name="oil-trends",
+        title="Trends of every fill",
+        columns=(
+            Column(title="Fill", numeric=True),
+            Column(title="Property"),
+            Column(title="Results", numeric=True),
+            Column(title="Axis"),
+            Column(title="Per 1000 h", numeric=True),
+            Column(title="95 % interval", numeric=True),
+            Column(title="p", numeric=True),
+            Column(title="Over the fill", numeric=True),
+            Column(title="R", numeric=True),
+            Column(title="Judged"),
+        ),
+        rows=tuple(rows),
+        marks=tuple("near" if row[-1] in ("rises", "falls") else "" for row in rows),
+        note="p is two-sided and exact in small series. Days count 24 h.",
+    )
+
+
+def _trend_row(t: Trend) -> tuple[str, ...]:
+    tested = t.per_1000h is not None and t.low is not None and t.high is not None
+    return (
+        str(t.fill + 1),
+        property_name(t.property),
+        f"{t.points}" + (f" ({t.limits} limits)" if t.limits else ""),
+        t.axis + (", top-ups added back" if t.corrected else ""),
+        f"{t.per_1000h:+.2g}" if tested else "–",
+        f"{t.low:.2g} to {t.high:.2g}" if tested else "–",
+        f"{t.p:.2g}" if t.p is not None else "–",
+        f"{t.change:+.2g}" if t.change is not None else "–",
+        f"{t.noise:.2g}" if tested else "–",
+        t.verdict,
+    )
+
+
+def _figures(check: OilCheck) -> tuple[FigureRef, ...]:
+    refs = []
+    for name, words in ((CHEMISTRY, "Condition of the oil"), (WEAR, "Wear metals and dirt")):
+        shown = shown_properties(check, name)
+        if shown:
+            refs.append(
+                FigureRef(
+                    name=name,
+                    caption=(
+                        f"{words} at {check.point or 'the sample point'}. Shaded: new oil ± R; "
+                        "dashed: limit; full upright line: oil change; dotted: laboratory change; "
+                        "open mark: limit of detection; cross: set aside; one marker a laboratory."
+                    ),
+                    alt=_alt(check, shown),
+                )
+            )
+    return tuple(refs)
+
+
+def _alt(check: OilCheck, shown: tuple[str, ...]) -> str:
+    parts = []
+    for name in shown:
+        one = check.judged.get(name)
+        if one is None:
+            continue
+        verdict = one.trend.verdict if one.trend is not None else "not tested"
+        change = f", {one.change:+.2g} from new" if one.change is not None else ""
+        parts.append(f"{property_name(name)} {one.text} {unit_text(one.unit)}{change}: {verdict}")
+    return ("; ".join(parts) or "No result on the last fill") + "."
+
+
+def _left_out(check: OilCheck) -> Panel:
+    rows = [("sample", name, f"set aside: {reason}") for name, reason in check.excluded]
+    rows += [("sample", name, "no usable day of sampling") for name in check.undated]
+    rows += [
+        ("sample point", name, "shown in the report, not mixed in") for name in check.other_points
+    ]
+    rows += [
+        (f"{cell.source.file}, {cell.source.locator}", cell.text, cell.reason)
+        for cell in check.unread
+    ]
+    return Panel(
+        key="oil.left-out",
+        title="What was set aside or could not be read",
+        question="Which results carry no weight here, and why?",
+        answer=(
+            f"{len(check.excluded)} samples are set aside, {len(check.unread)} cells could not be "
+            f"read, {len(check.undated)} samples have no usable date."
+        ),
+        status="set aside",
+        tables=(
+            Table(
+                name="oil-left-out",
+                title="Kept as received, not used",
+                columns=(Column(title="Place"), Column(title="As written"), Column(title="Why")),
+                rows=tuple(rows),
+                marks=tuple("set aside" for _ in rows),
+            ),
+        ),
+    )
+
+
+def _precision(check: OilCheck) -> Panel:
+    rows = tuple(
+        (
+            property_name(one.property),
+            f"{one.noise:.2g} {unit_text(one.unit)}".strip(),
+            one.noise_source,
+            one.noise_flag,
+            one.noise_note,
+        )
+        for one in _ordered(check)
+    )
+    weak = sum(row[3] != "published" for row in rows)
+    return Panel(
+        key="oil.precision",
+        title="How far the tests scatter",
+        question="From which change on is a change real?",
+        answer=(
+            f"The noise floor of {len(rows)} properties is listed; {weak} rest on memory or "
+            "common practice and are to be checked against the laboratory's own figures."
+        ),
+        tables=(
+            Table(
+                name="oil-precision",
+                title="Noise floor at the level of the latest sample",
+                columns=(
+                    Column(title="Property"),
+                    Column(title="Noise floor", numeric=True),
+                    Column(title="Method"),
+                    Column(title="Known how"),
+                    Column(title="Note"),
+                ),
+                rows=rows,
+                note="R: two results of two laboratories differ by more in one case of twenty.",
+            ),
+        ),
+    )
+
+
+def _ordered(check: OilCheck) -> list[Judged]:
+    """Those beyond a limit first, then by how far they stand out."""
+    return sorted(
+        check.judged.values(),
+        key=lambda one: (not one.beyond(), -abs(one.stands_out or 0.0), one.property),
+    )
