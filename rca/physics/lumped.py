@@ -1,8 +1,9 @@
-"""The lumped bubble: one gas temperature, heat through a layer; a cheap upper bound of the mean.
+"""The lumped bubble: one gas temperature, heat through a layer; a cheap estimate of the mean.
 
 Keller-Miksis radius; heat flow 4 pi R^2 k (T0 - T)/l with l = min(sqrt(R alpha/|R'|), R/pi).
-Against the resolved model the mean comes out hot by up to 125 K in pump-like rises, and there is
-no core at all: it may bound the mean from above and never speaks about ignition. Source: Toegel,
+Against the resolved model with the same inertia the peak mean temperature lies within 30 K for a
+rise 1 -> 172 bar in 1 ms (Peclet 0.1 to 30), hot when small and a little cold when large: an
+estimate, no bound. There is no core at all, so it never speaks about ignition. Source: Toegel,
 Gompf, Pecha, Lohse, Phys. Rev. Lett. 85 (2000) 3165 (heat flow, from memory).
 """
 
@@ -21,7 +22,7 @@ Floats = npt.NDArray[np.float64]
 class LumpedPeaks:
     """What lumped histories came to; arrays of one length."""
 
-    mean: Floats  # peak gas temperature [K], an upper bound of the mean
+    mean: Floats  # peak gas temperature [K]
     pressure: Floats  # peak gas pressure [Pa]
     radius_min: Floats  # [m]
     steps: Floats  # [-]
@@ -36,7 +37,7 @@ def lumped_batch(
     *,
     hold: npt.ArrayLike | None = None,
     oil: OilSide | None = None,
-    tolerance: float = 1e-4,
+    tolerance: float = 5e-4,
     conduction_factor: npt.ArrayLike = 1.0,
     workers: int = 1,
 ) -> LumpedPeaks:
