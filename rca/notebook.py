@@ -1,37 +1,115 @@
 """Everything a notebook of an investigation imports.
 
-    from rca.notebook import open_investigation
+    from rca.notebook import open_investigation, show
 
     inv = open_investigation(case_dir, store_dir)
-    check = inv.check_oil()
+    samples = inv.read_oil()
+    check = check_oil(inv.case, samples)
     ...
-    inv.keep("oil", ...)
+    inv.keep("oil", check=check, evidence=..., section=..., figures=...)
 
-A notebook opened by hand in JupyterLab needs no store: earlier stages it depends on are then
-computed on the spot and kept in a temporary folder, whose path ``open_investigation`` shows.
+Opened by hand in JupyterLab with an empty ``store_dir``, the results go to a folder of the case
+under the user's temporary folder, so that the notebooks run one after another find each other's.
 """
 
+import hashlib
 import tempfile
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
+from datetime import date, datetime
 from pathlib import Path
 from typing import TypeVar
 
 from IPython.display import HTML, display
 from matplotlib.figure import Figure
 
+from rca.actions.review import ActionsCheck, review_actions
 from rca.archive.codec import from_plain, to_plain
 from rca.archive.store import StageResult, Store, split_items
+from rca.base.errors import CaseError, Problem
 from rca.base.panel import Section
+from rca.base.units import QUANTITY_DIMENSIONS, parse_quantity
 from rca.case.model import Case, Gap
+from rca.case.oil import OilSample
+from rca.case.series import AlignedRecord, FloatArray
+from rca.damage.check import DamageCheck, check_damage
+from rca.discharge.check import check_discharge
+from rca.discharge.model import DischargeCheck
+from rca.evidence.from_damage import from_damage
+from rca.evidence.from_discharge import from_discharge
+from rca.evidence.from_history import from_history
+from rca.evidence.from_oil import from_oil
+from rca.evidence.from_records import from_records
+from rca.evidence.from_suction import from_suction
 from rca.evidence.item import EvidenceItem, NotAssessed
+from rca.figures.damage import figures_damage
+from rca.figures.discharge import figures_discharge
 from rca.figures.notebook_page import section_html
+from rca.figures.oil import figures_oil
+from rca.figures.panels_case import panels_actions, panels_intake
+from rca.figures.panels_damage import panels_damage
+from rca.figures.panels_discharge import panels_discharge
+from rca.figures.panels_oil import panels_oil
+from rca.figures.panels_records import FileRow, panels_records
+from rca.figures.panels_suction import panels_suction
+from rca.figures.panels_verdict import panels_verdict
+from rca.figures.records import figures_records
 from rca.figures.style import svg_bytes
-from rca.intake.read import load_case
+from rca.figures.suction import figures_suction
+from rca.figures.verdict import figures_verdict
+from rca.intake.oil_reports import OilReading, read_oil_reports
+from rca.intake.read import read_case
+from rca.intake.record_files import RecordReading, read_records
+from rca.oil.check import check_oil
+from rca.records.bursts import BurstFinding, burst_finding
+from rca.records.check import RecordCheck, check_records, usable
+from rca.suction.budget import local_atmosphere
+from rca.suction.check import SuctionCheck, check_suction, inlet_limit
+from rca.verdict.knowledge import shipped_knowledge
+from rca.verdict.model import VerdictCheck
+from rca.verdict.weigh import weigh
 
 T = TypeVar("T")
 
-__all__ = ["Investigation", "open_investigation", "show"]
+__all__ = [
+    "ActionsCheck",
+    "DamageCheck",
+    "DischargeCheck",
+    "Investigation",
+    "RecordCheck",
+    "SuctionCheck",
+    "VerdictCheck",
+    "check_damage",
+    "check_discharge",
+    "check_oil",
+    "check_records",
+    "check_suction",
+    "figures_damage",
+    "figures_discharge",
+    "figures_oil",
+    "figures_records",
+    "figures_suction",
+    "figures_verdict",
+    "from_damage",
+    "from_discharge",
+    "from_history",
+    "from_oil",
+    "from_records",
+    "from_suction",
+    "inlet_limit",
+    "open_investigation",
+    "panels_actions",
+    "panels_damage",
+    "panels_discharge",
+    "panels_intake",
+    "panels_oil",
+    "panels_records",
+    "panels_suction",
+    "panels_verdict",
+    "shipped_knowledge",
+    "show",
+    "weigh",
+]
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,9 +117,9 @@ class Investigation:
     """One case and the store its notebooks fill."""
 
     case: Case
+    problems: tuple[Problem, ...]
     folder: Path
     store: Store
-    figures: dict[str, Figure] = field(default_factory=dict)
 
     def keep(
         self,
@@ -81,20 +159,122 @@ class Investigation:
         """All items stored so far, in a fixed order: those that weigh, and those nobody saw."""
         stages = [self.store.read(stage) for stage in self.store.stages()]
         items = sorted((i for s in stages for i in s.evidence), key=lambda i: (i.group, i.key))
-        missing = sorted((n for s in stages for n in s.not_assessed), key=lambda n: n.key)
+        seen = {item.node for item in items}
+        missing = sorted(
+            (n for s in stages for n in s.not_assessed if n.node not in seen), key=lambda n: n.key
+        )
         return tuple(items), tuple(missing)
+
+    def read_oil(self) -> OilReading:
+        """The laboratory reports.
+
+        Raises CaseError where one can't be read.
+        """
+        return _without_errors(read_oil_reports(self.folder, self.case))
+
+    def read_records(self) -> RecordReading:
+        """The slow and fast records; kept for the next notebooks.
+
+        Raises CaseError where one can't be read.
+        """
+        reading = _without_errors(
+            read_records(self.folder, self.case, atmosphere=local_atmosphere(self.case))
+        )
+        if reading.aligned is not None:
+            self.store.write_aligned(usable(self.case, reading.aligned))
+        return reading
+
+    def aligned(self) -> AlignedRecord | None:
+        """The slow records as the records notebook kept them; None where there are none."""
+        return self.store.read_aligned()
+
+    def bursts(self, reading: RecordReading) -> tuple[tuple[BurstFinding, FloatArray], ...]:
+        """What each fast record shows, with its samples."""
+        pump = self.case.pump
+        speed = pump.speed.value if pump.speed is not None else None
+        return tuple(
+            (
+                burst_finding(
+                    b.quantity, b.values, b.rate_hz, b.source, speed=speed, elements=pump.elements
+                ),
+                b.values,
+            )
+            for b in reading.bursts
+        )
+
+    def file_rows(self, reading: RecordReading) -> tuple[FileRow, ...]:
+        """The record files as they were read, for the table of their quality."""
+        return tuple(
+            FileRow(
+                file=f.file, rows=f.rows, start_s=f.start_s, end_s=f.end_s,
+                interval_s=f.interval_s, gaps=f.gaps, bad_stamps=f.bad_stamps,
+                backward_stamps=f.backward_stamps, bad_cells=sum(f.bad_cells.values()),
+                offset_s=f.offset_s,
+            )
+            for f in reading.files
+        )
+
+    def inlet_for_discharge(self) -> tuple[tuple[float, float] | None, float | None]:
+        """Inlet pressure with its uncertainty [Pa] and released air [-], measured first."""
+        suction = self.result("suction", SuctionCheck)
+        measured = suction.measured and (suction.measured.last or suction.measured.warm)
+        if measured and suction.measured is not None:
+            return (measured.median, suction.measured.sensor_u), measured.released
+        if suction.normal is not None:
+            state = suction.normal
+            return (state.pressure.mean, state.pressure.sd), state.released.p50
+        return None, None
+
+    def review_actions(self) -> ActionsCheck:
+        """Every action against its guards and the records, as of the last day of the evidence."""
+        return review_actions(
+            self.case.actions, self.aligned(), convert=self._convert, as_of=self._last_day()
+        )
+
+    def _convert(self, text: str, quantity: str) -> float:
+        dimension = QUANTITY_DIMENSIONS[quantity]
+        return parse_quantity(text, dimension, atmosphere=local_atmosphere(self.case)).value
+
+    def _last_day(self) -> date | None:
+        """The latest day anything in the folder speaks of; the clock is never asked."""
+        days = [a.done for a in self.case.actions if a.done is not None]
+        days += [e.when.date() if isinstance(e.when, datetime) else e.when
+                 for e in self.case.history]
+        days += [f.when for f in self.case.findings if f.when is not None]
+        record = self.aligned()
+        if record is not None and record.time_s.size:
+            days.append(date.fromordinal(719163 + int(record.time_s[-1] // 86400)))
+        return max(days, default=None)
 
 
 def open_investigation(case_dir: str, store_dir: str = "") -> Investigation:
-    """The case in ``case_dir`` and the store in ``store_dir`` (a temporary folder where empty).
+    """The case in ``case_dir`` and the store in ``store_dir``.
 
     Raises CaseError with every problem of the case folder.
     """
     folder = Path(case_dir).resolve()
-    store = Path(store_dir) if store_dir else Path(tempfile.mkdtemp(prefix="rca-store-"))
-    return Investigation(case=load_case(folder), folder=folder, store=Store(store))
+    reading = read_case(folder)
+    if reading.case is None or reading.errors:
+        raise CaseError(reading.errors)
+    if store_dir:
+        store = Path(store_dir)
+    else:
+        digest = hashlib.sha256(str(folder).encode()).hexdigest()[:12]
+        store = Path(tempfile.gettempdir()) / f"rca-notebooks-{digest}"
+    return Investigation(
+        case=reading.case, problems=reading.problems, folder=folder, store=Store(store)
+    )
 
 
 def show(section: Section, figures: Mapping[str, Figure] | None = None) -> None:
     """Show the panels of a section with their figures, as the report will lay them out."""
     display(HTML(section_html(section, figures or {})))
+
+
+R = TypeVar("R", OilReading, RecordReading)
+
+
+def _without_errors(reading: R) -> R:
+    if reading.problems:
+        raise CaseError(reading.problems)
+    return reading

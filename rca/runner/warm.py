@@ -63,7 +63,7 @@ def _preload() -> None:
     import scipy.optimize  # noqa: PLC0415
     import scipy.stats  # noqa: F401, PLC0415
 
-    import rca.archive.codec  # noqa: F401, PLC0415
+    import rca.notebook  # noqa: F401, PLC0415
 
 
 def _reap(children: set[int]) -> set[int]:
