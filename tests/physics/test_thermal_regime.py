@@ -82,3 +82,23 @@ def test_fractions_rise_with_peclet_and_stay_in_bounds(a, factor):
 def test_refusals(call):
     with pytest.raises(OutOfRangeError):
         call()
+
+
+@pytest.mark.outside_value(source="independent computation of the conduction model by another program, shares of the adiabatic rise")
+@pytest.mark.parametrize(("number", "core", "mean"), [(0.1, 0.112, 0.047), (1, 0.371, 0.162), (3, 0.582, 0.262), (10, 0.897, 0.419), (30, 1.0, 0.603), (100, 1.0, 0.760), (1000, 1.0, 0.918), (1e4, 1.0, 0.974)])  # fmt: skip
+def test_shares_of_the_adiabatic_rise(number, core, mean):
+    assert core_fraction(number) == pytest.approx(core, abs=0.02)
+    assert mean_fraction(number) == pytest.approx(mean, abs=0.02)
+
+
+@pytest.mark.parametrize(("p1", "t0", "p2"), [(0.6e5, 333.15, 172e5), (1e5, 333.15, 350e5)])
+@pytest.mark.parametrize("number", [0.1, 1.0, 10.0])
+def test_the_shares_hold_for_other_pressures_within_their_stated_spread(p1, t0, p2, number):
+    from rca.physics.bubble import bubble_batch
+    from rca.physics.compression import adiabatic_end_temperature
+    from rca.physics.thermal_regime import SURROGATE_SPREAD
+
+    radius = radius_at_peclet(number, 1e-3, t0, p1)
+    core = bubble_batch(radius, t0, p1, p2, 1e-3, inertial=False).core[0]
+    share = (core - t0) / (adiabatic_end_temperature(t0, p1, p2) - t0)
+    assert core_fraction(number) == pytest.approx(share, abs=SURROGATE_SPREAD)
