@@ -7,8 +7,8 @@ from rca.base.source import Origin, Reading, Source
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
-from rca.suction.check import NEAR_VAPOUR, RELEASED_MATTERS, SuctionCheck
-from rca.suction.measured import Regime
+from rca.suction.check import RELEASED_MATTERS, SuctionCheck
+from rca.suction.measured import NEAR_VAPOUR, Regime
 
 MISREAD = 0.03  # share of records that are wrong in a way no check of ours sees; judgement
 STRAIN = (
@@ -65,8 +65,10 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
         EvidenceItem(
             key="inlet.measured",
             node=Node.INLET_PRESSURE,
-            likelihood=_states(regime.median, u, check.limit, trust=1 - MISREAD),
-            statement=_regime_words(regime, check.limit),
+            likelihood=_with_starts(
+                _states(regime.median, u, check.limit, trust=1 - MISREAD), measured.cold
+            ),
+            statement=_regime_words(regime, check.limit, measured.cold),
             sources=_source(aligned),
             group=Group.INLET,
             common_cause="sensor of the inlet pressure",
@@ -78,12 +80,30 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     ]
 
 
-def _regime_words(regime: Regime, limit: float) -> str:
-    return (
+def _with_starts(likelihood: dict[str, float], cold: Regime | None) -> dict[str, float]:
+    """Cold starts near vapour pressure count towards that state, by the hours they add up to.
+
+    An hour in all makes "near vapour" about half as probable a description as the warm state.
+    """
+    if cold is None or cold.near_vapour <= 0.0:
+        return likelihood
+    hours = cold.hours * cold.near_vapour
+    near = max(likelihood["near vapour"], 0.9 * hours / (hours + 1.0))
+    return likelihood | {"near vapour": near}
+
+
+def _regime_words(regime: Regime, limit: float, cold: Regime | None) -> str:
+    words = (
         f"Measured inlet pressure in the last part of the record, warm and running: median "
         f"{regime.median / 1e5:.2f} bar(a), 5 to 95 % {regime.p05 / 1e5:.2f} to "
         f"{regime.p95 / 1e5:.2f} bar(a); limit {limit / 1e5:.2f} bar(a)."
     )
+    if cold is not None and cold.near_vapour > 0.0:
+        words += (
+            f" With cold oil below {NEAR_VAPOUR / 1e5:.2f} bar(a) for "
+            f"{cold.hours * cold.near_vapour:.1f} h."
+        )
+    return words
 
 
 def _computed(case: Case, check: SuctionCheck) -> Items:

@@ -21,11 +21,9 @@ from rca.suction.budget import (
     pressure_budget,
     pump_flow,
 )
-from rca.suction.measured import MeasuredInlet, measure_inlet
+from rca.suction.measured import NEAR_VAPOUR, MeasuredInlet, measure_inlet
 
 FloatArray = npt.NDArray[np.float64]
-NEAR_VAPOUR = 0.15e5  # [Pa]; oil vapour is below 10 Pa, but a chamber lags the port by a few
-# tenths of a bar, so a port this low has vapour in the chamber; common practice, no source
 RELEASED_MATTERS = 0.01  # gas per volume of oil that a pump notices; common practice, no source
 # Lowest continuous inlet pressure where the maker's is not given [Pa]; common practice, no source
 USUAL_LIMIT = {

@@ -17,6 +17,8 @@ WARM_BELOW = 12.0  # [K] below normal temperature counts as cold
 SENSOR_U = 0.02e5  # [Pa], standard uncertainty of an industrial transducer where none is stated;
 # common practice, no source
 LEAST_BINS = 20
+NEAR_VAPOUR = 0.15e5  # [Pa]; oil vapour is below 10 Pa, but a chamber lags the port by a few
+# tenths of a bar, so a port this low has vapour in the chamber; common practice, no source
 MIDDLE_TAU = 1.0  # [s], middle of the range of release time constants
 STEPS = 12  # pieces in time over which the development is shown
 
@@ -31,6 +33,7 @@ class Regime:
     p95: float
     lowest: float
     below_limit: float  # share of the time with the bin's mean below the limit
+    near_vapour: float  # share of the time near vapour pressure
     released: float  # median gas per oil at the port, finite rate [-]
 
 
@@ -66,7 +69,7 @@ class MeasuredInlet:
 def measure_inlet(
     case: Case, aligned: AlignedRecord, *, limit: float | None
 ) -> MeasuredInlet | None:
-    """The measured inlet pressure by state of the machine; None where there is no usable record."""
+    """The measured inlet pressure by state of the machine; None without a usable record."""
     inlet = aligned.get("inlet pressure")
     if inlet is None:
         return None
@@ -162,6 +165,7 @@ def _regime(case: Case, aligned: AlignedRecord, mask: Mask, limit: float | None)
         p95=float(high),
         lowest=float(np.nanmin(inlet.low[mask])),
         below_limit=float(np.mean(values < limit)) if limit is not None else 0.0,
+        near_vapour=float(np.mean(values < NEAR_VAPOUR)),
         released=_released(case, float(mid)),
     )
 
