@@ -88,7 +88,7 @@ def report_case(folder: Path, out: Path, options: Options, progress: Progress) -
             dumps(_run_record(results, started, options)), encoding="utf-8"
         )
         rendered = render_report(
-            building, building, case_dir=folder, paper=options.paper, language=options.language
+            case, folder, store, results, paper=options.paper, language=options.language
         )
         progress("report", "done")
     return Outcome(folder=out, results=results, rendered=rendered)

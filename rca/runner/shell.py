@@ -146,7 +146,6 @@ class NotebookShell:
 
 def _plain(data: dict[str, Any]) -> dict[str, Any]:
     """Display data with bytes (PNG) as base64 text, as the notebook format has it."""
-
     return {
         mime: base64.b64encode(value).decode() if isinstance(value, bytes) else value
         for mime, value in data.items()

@@ -1,0 +1,92 @@
+"""HTML to a tagged PDF. Any warning of the renderer is an error; nothing outside is fetched."""
+
+import logging
+import os
+from pathlib import Path
+from typing import Any
+from urllib.parse import unquote, urlsplit
+
+from rca.base.errors import RenderError
+
+BASE = "rca-report:///"
+SERVED = ("figures", "photos", "fonts")
+TYPES = {
+    ".svg": "image/svg+xml",
+    ".jpg": "image/jpeg",
+    ".png": "image/png",
+    ".ttf": "font/ttf",
+}
+EPOCH = "1767225600"  # 2026-01-01, so that the same report has the same bytes
+ADVICE = (
+    "The PDF needs the Pango library, which is not installed; report.html was written.\n"
+    "  Debian, Ubuntu:  apt install libpango-1.0-0 libpangoft2-1.0-0 libharfbuzz-subset0\n"
+    "  Fedora:          dnf install pango\n"
+    "  macOS:           brew install pango\n"
+    "  Windows:         install MSYS2, then  pacman -S mingw-w64-x86_64-pango  and put its bin "
+    "folder on PATH"
+)
+# Said by the renderer about the machine, not about the page.
+HARMLESS = ("harfbuzz-subset",)
+
+
+def write_pdf(html: str, folder: Path, target: Path) -> tuple[Path | None, str]:
+    """Write the PDF; (None, advice) where Pango is missing.
+
+    Raises RenderError with every warning the renderer gave.
+    """
+    os.environ.setdefault("SOURCE_DATE_EPOCH", EPOCH)
+    try:
+        import weasyprint  # noqa: PLC0415  slow, and only the report needs it
+    except OSError:
+        return None, ADVICE
+    heard = _Heard()
+    logger = logging.getLogger("weasyprint")
+    logger.addHandler(heard)
+    try:
+        document = weasyprint.HTML(string=html, base_url=BASE, url_fetcher=_served(folder))
+        document.write_pdf(target, pdf_variant="pdf/ua-1")
+    finally:
+        logger.removeHandler(heard)
+    if heard.lines:
+        target.unlink(missing_ok=True)
+        raise RenderError("the renderer warned:\n" + "\n".join(dict.fromkeys(heard.lines)))
+    return target, ""
+
+
+class _Heard(logging.Handler):
+    """Keeps every warning."""
+
+    def __init__(self) -> None:
+        super().__init__(level=logging.WARNING)
+        self.lines: list[str] = []
+
+    def emit(self, record: logging.LogRecord) -> None:
+        """Keep one record."""
+        text = record.getMessage()
+        if not any(word in text for word in HARMLESS):
+            self.lines.append(text)
+
+
+def _served(folder: Path) -> Any:
+    """A fetcher that serves the report's own figures, photographs and fonts and nothing else."""
+    from weasyprint.urls import URLFetcher, URLFetcherResponse  # noqa: PLC0415
+
+    table = {
+        f"{name}/{path.name}": path
+        for name in SERVED
+        if (folder / name).is_dir()
+        for path in sorted((folder / name).iterdir())
+        if path.suffix in TYPES
+    }
+
+    class Fetcher(URLFetcher):  # type: ignore[misc]  # weasyprint ships no types
+        def fetch(self, url: str, headers: Any = None) -> Any:
+            del headers
+            parts = urlsplit(url)
+            name = unquote(parts.path).lstrip("/")
+            if f"{parts.scheme}:///" != BASE or name not in table:
+                raise ValueError(f"{url} is not part of this report")
+            path = table[name]
+            return URLFetcherResponse(url, path.read_bytes(), {"Content-Type": TYPES[path.suffix]})
+
+    return Fetcher()

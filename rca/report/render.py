@@ -1,0 +1,70 @@
+"""Stored results to ``report.html`` and ``report.pdf`` from one set of templates."""
+
+import hashlib
+import shutil
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import jinja2
+
+from rca.archive.codec import dumps
+from rca.archive.store import Store
+from rca.base.shipped import shipped_folder
+from rca.case.model import Case
+from rca.figures.style import font_folder
+from rca.report.pdf import write_pdf
+from rca.report.photos import shrink_photos
+from rca.report.view import build_page
+
+PAPERS = ("A4", "Letter")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RenderedReport:
+    """What was written; ``pdf`` is None where Pango is missing, and ``advice`` says what to do."""
+
+    html: Path
+    pdf: Path | None
+    advice: str = ""
+
+
+def render_report(
+    case: Case,
+    case_dir: Path,
+    store: Store,
+    results: dict[str, Any],
+    *,
+    paper: str = "A4",
+    language: str = "en",
+) -> RenderedReport:
+    """Write the report into the store's own folder.
+
+    Raises RenderError for a warning of the renderer, jinja2.UndefinedError for a template that
+    names something the page does not have.
+    """
+    out = store.folder
+    digest = hashlib.sha256(dumps(results).encode()).hexdigest()
+    plates = shrink_photos(case_dir, case.photos, out / "photos")
+    _fonts(out / "fonts")
+    page = build_page(case, store, results, digest, plates, paper=paper, language=language)
+    environment = jinja2.Environment(
+        loader=jinja2.FileSystemLoader(shipped_folder("templates")),
+        autoescape=True,
+        undefined=jinja2.StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    style = environment.get_template("report.css").render(page=page)
+    html = environment.get_template("report.html.j2").render(page=page, style=style)
+    target = out / "report.html"
+    target.write_text(html, encoding="utf-8")
+    pdf, advice = write_pdf(html, out, out / "report.pdf")
+    return RenderedReport(html=target, pdf=pdf, advice=advice)
+
+
+def _fonts(out: Path) -> None:
+    out.mkdir(parents=True, exist_ok=True)
+    for path in sorted(font_folder().iterdir()):
+        if path.suffix in {".ttf", ".md"}:
+            shutil.copyfile(path, out / path.name)
