@@ -8,7 +8,9 @@ from urllib.parse import unquote, urlsplit
 
 from rca.base.errors import RenderError
 
-BASE = "rca-report:///"
+BASE = (
+    "https://report.invalid/"  # reserved by RFC 2606: names no place; relative links need a host
+)
 SERVED = ("figures", "photos", "fonts")
 TYPES = {
     ".svg": "image/svg+xml",
@@ -82,9 +84,8 @@ def _served(folder: Path) -> Any:
     class Fetcher(URLFetcher):  # type: ignore[misc]  # weasyprint ships no types
         def fetch(self, url: str, headers: Any = None) -> Any:
             del headers
-            parts = urlsplit(url)
-            name = unquote(parts.path).lstrip("/")
-            if f"{parts.scheme}:///" != BASE or name not in table:
+            name = unquote(urlsplit(url).path).lstrip("/")
+            if not url.startswith(BASE) or name not in table:
                 raise ValueError(f"{url} is not part of this report")
             path = table[name]
             return URLFetcherResponse(url, path.read_bytes(), {"Content-Type": TYPES[path.suffix]})
