@@ -29,6 +29,7 @@ ADVICE = (
 )
 # Said by the renderer about the machine, not about the page.
 HARMLESS = ("harfbuzz-subset",)
+LONGEST_LINE = 300
 
 
 def write_pdf(html: str, folder: Path, target: Path) -> tuple[Path | None, str]:
@@ -66,7 +67,7 @@ class _Heard(logging.Handler):
         """Keep one record."""
         text = record.getMessage()
         if not any(word in text for word in HARMLESS):
-            self.lines.append(text)
+            self.lines.append(text[:LONGEST_LINE])
 
 
 def _served(folder: Path) -> Any:
@@ -84,9 +85,11 @@ def _served(folder: Path) -> Any:
     class Fetcher(URLFetcher):  # type: ignore[misc]  # weasyprint ships no types
         def fetch(self, url: str, headers: Any = None) -> Any:
             del headers
+            if url.startswith("data:image/png;base64,"):  # dense marks inside our own figures
+                return super().fetch(url)
             name = unquote(urlsplit(url).path).lstrip("/")
             if not url.startswith(BASE) or name not in table:
-                raise ValueError(f"{url} is not part of this report")
+                raise ValueError(f"{url[:80]} is not part of this report")
             path = table[name]
             return URLFetcherResponse(url, path.read_bytes(), {"Content-Type": TYPES[path.suffix]})
 
