@@ -1,208 +1,200 @@
-"""Names of oil properties as laboratories write them, and their units."""
+"""Names of oil properties as laboratories write them, and their units; the lists are data."""
 
 import re
-from typing import Final
+import tomllib
+import unicodedata
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import cache
+from importlib.resources import files
+from typing import Any
 
-ELEMENTS: Final = [
-    "Fe",
-    "Cu",
-    "Cr",
-    "Al",
-    "Pb",
-    "Sn",
-    "Ni",
-    "Si",
-    "Na",
-    "K",
-    "Ca",
-    "Mg",
-    "Zn",
-    "P",
-    "B",
-    "Ba",
-    "Mo",
-    "Ag",
-    "Ti",
-    "V",
-    "Mn",
-    "Li",
-    "S",
-    "Cl",
-]
-_ELEMENT_WORDS: Final[dict[str, str]] = {
-    "iron": "Fe",
-    "eisen": "Fe",
-    "fer": "Fe",
-    "copper": "Cu",
-    "kupfer": "Cu",
-    "cuivre": "Cu",
-    "chromium": "Cr",
-    "chrom": "Cr",
-    "aluminium": "Al",
-    "aluminum": "Al",
-    "lead": "Pb",
-    "blei": "Pb",
-    "plomb": "Pb",
-    "tin": "Sn",
-    "zinn": "Sn",
-    "nickel": "Ni",
-    "silicon": "Si",
-    "silizium": "Si",
-    "silicium": "Si",
-    "sodium": "Na",
-    "natrium": "Na",
-    "potassium": "K",
-    "kalium": "K",
-    "calcium": "Ca",
-    "kalzium": "Ca",
-    "magnesium": "Mg",
-    "zinc": "Zn",
-    "zink": "Zn",
-    "phosphorus": "P",
-    "phosphor": "P",
-    "boron": "B",
-    "bor": "B",
-    "barium": "Ba",
-    "molybdenum": "Mo",
-    "silver": "Ag",
-    "silber": "Ag",
-    "titanium": "Ti",
-    "lithium": "Li",
-    "sulfur": "S",
-    "schwefel": "S",
-    "chlorine": "Cl",
-    "chlor": "Cl",
-}
-# property -> (canonical unit, patterns on the header in lower case without unit)
-PROPERTIES: Final[dict[str, tuple[str, str]]] = {
-    "viscosity_40": (
-        "mm2/s",
-        r"(kin\w*\.?\s*)?(visc\w*|visk\w*|kv|v|cst)\W*(@|at|bei|à)?\W*40\b.*",
-    ),
-    "viscosity_100": (
-        "mm2/s",
-        r"(kin\w*\.?\s*)?(visc\w*|visk\w*|kv|v|cst)\W*(@|at|bei|à)?\W*100\b.*",
-    ),
-    "acid_number": (
-        "mgKOH/g",
-        r"acid\w*.*|an|tan|nz|neutrali\w*.*|säurezahl|saeurezahl|indice d.acide",
-    ),
-    "water": ("mg/kg", r"water.*|wasser.*|eau.*|h2o.*|kf|karl.?fischer.*"),
-    "oxidation": ("A/cm", r"oxidation(?!.*life).*|ox|oxydation.*"),
-    "nitration": ("A/cm", r"nitr\w*.*"),
-    "sulfation": ("A/cm", r"sulfat\w*.*|sulphat\w*.*"),
-    "soot": ("A/cm", r"soot.*|ruß.*|russ.*|suie.*"),
-    "colour": ("D1500", r"colou?r.*|farbe.*|farbzahl.*|couleur.*"),
-    "patch_colour": ("dE", r"patch.*|membrane patch.*|varnish.*"),
-    "antioxidant_remaining": ("%", r"antioxid.*|remaining useful.*|restantiox.*"),
-    "oxidation_life": ("min", r"oxidation life.*|rotating pressure vessel.*|rpvot.*"),
-    "ferrous_index": ("-", r"ferrous.*|pq.*|magnetic.*index.*"),
-    "cleanliness_code": ("ISO 4406", r"(iso\s*)?(4406|code|cleanliness.*|reinheit.*)|iso"),
-    "particles_4": ("1/mL", r"(particles?|partikel|counts?)?\W*(>|>=|≥)?\s*4\s*(µm|um|μm).*"),
-    "particles_6": ("1/mL", r"(particles?|partikel|counts?)?\W*(>|>=|≥)?\s*6\s*(µm|um|μm).*"),
-    "particles_14": ("1/mL", r"(particles?|partikel|counts?)?\W*(>|>=|≥)?\s*14\s*(µm|um|μm).*"),
-    "insolubles": ("%", r"insolub.*|unlösl.*"),
-    "air_release": ("min", r"air.?release.*|luftabscheid.*|désaération.*|lav"),
-    "foam_tendency": ("mL", r"foam.*tend.*|schaum.*neig.*"),
-    "foam_stability": ("mL", r"foam.*stab.*|schaum.*best.*"),
-    "flash_point": ("degC", r"flash.*|flammpunkt.*|point d.éclair.*"),
-    "conductivity": ("pS/m", r"conductiv.*|leitf.*|conductivit.*"),
-}
-META: Final[dict[str, str]] = {
-    "id": r"(sample|lab|bottle|probe\w*|labor\w*)?\W*(id|no|nr|number|nummer)\W*.*|sample|probe",
-    "sampled": r"(date\W*)?(sampled|taken|drawn)(\W*(on|date|at))?|sampl\w* date|entnahme\w*.*|"
-    r"probenahme.*|date de prélèvement",
-    "reported": r"report\w*.*|bericht.*",
-    "received": r"receiv\w*.*|eingang.*",
-    "point": r"(sample|sampling)?\W*(point|location)|entnahmestelle|messstelle|stelle",
-    "machine_hours": r"(machine|unit|equipment|masch\w*|betriebs)\W*(hours?|hrs?|stunden|h)\b.*",
-    "oil_hours": r"(oil|fluid|öl|oel)\W*(hours?|hrs?|stunden|h|age)\b.*",
-    "laboratory": r"lab|laboratory|labor",
-    "kind": r"(sample )?(type|kind|status)|art",
-    "comment": r"comments?|remarks?|bemerkung\w*|diagnos\w*",
-}
-# factor to the canonical unit; ppm is read as mg/kg for elements and water
-UNIT_FACTORS: Final[dict[tuple[str, str], float]] = {
-    ("mg/kg", "mg/kg"): 1.0,
-    ("mg/kg", "ppm"): 1.0,
-    ("mg/kg", "%"): 1e4,
-    ("mm2/s", "mm2/s"): 1.0,
-    ("mm2/s", "cst"): 1.0,
-    ("mm2/s", "mm²/s"): 1.0,
-    ("mgKOH/g", "mgkoh/g"): 1.0,
-    ("mgKOH/g", "mg koh/g"): 1.0,
-    ("A/cm", "a/cm"): 1.0,
-    ("A/cm", "a/0.1mm"): 100.0,
-    ("A/cm", "a/0.1 mm"): 100.0,
-    ("%", "%"): 1.0,
-    ("min", "min"): 1.0,
-    ("dE", "de"): 1.0,
-    ("1/mL", "1/ml"): 1.0,
-    ("1/mL", "1/100ml"): 0.01,
-    ("1/mL", "/100ml"): 0.01,
-    ("1/mL", "/ml"): 1.0,
-    ("mL", "ml"): 1.0,
-    ("degC", "degc"): 1.0,
-    ("degC", "°c"): 1.0,
-    ("pS/m", "ps/m"): 1.0,
-    ("D1500", "d1500"): 1.0,
-    ("D1500", "astm d1500"): 1.0,
-    ("-", "-"): 1.0,
-    ("-", ""): 1.0,
-    ("D1500", ""): 1.0,
-    ("ISO 4406", ""): 1.0,
-    ("ISO 4406", "iso 4406"): 1.0,
-}
-_UNIT = re.compile(r"[\[(]\s*([^\])]*?)\s*[\])]\s*$")
+_BRACKETED = re.compile(r"[\[(]\s*([^\])]*?)\s*[\])]\s*$")
+_METHOD = re.compile(
+    r"\b(ASTM\s*D\s?\d{3,4}(?:-\d+\w*)?|D\d{3,4}|(?:DIN(?: EN)?|EN)(?: ISO)?\s*\d{4,5}(?:-\d+)?|"
+    r"ISO\s*(?!4406)\d{4,5}|IEC\s*\d{5})\b",
+    re.IGNORECASE,
+)
+_SCALE = re.compile(r"D\s?1500", re.IGNORECASE)
 
 
-def split_unit(header: str) -> tuple[str, str]:
-    """A header without its bracketed unit, and the unit."""
-    match = _UNIT.search(header.strip())
-    if match is None:
-        return header.strip(), ""
-    return header.strip()[: match.start()].strip(), match[1]
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Property:
+    """One property the reader knows, its unit and what a number in that unit can be."""
+
+    name: str
+    unit: str
+    stated: bool
+    low: float
+    high: float
 
 
-def recognise(header: str) -> str | None:
-    """The canonical name of a property or element a header stands for, or None."""
-    name, _ = split_unit(header)
-    plain = re.sub(r"\s+", " ", name).strip()
-    if plain in ELEMENTS:
-        return plain
-    folded = plain.casefold()
-    if folded in _ELEMENT_WORDS:
-        return _ELEMENT_WORDS[folded]
-    head = folded.split(" ")[0].strip("()")
-    if head in _ELEMENT_WORDS:
-        return _ELEMENT_WORDS[head]
-    if folded in PROPERTIES:
-        return folded
-    for canonical, (_, pattern) in PROPERTIES.items():
-        if re.fullmatch(pattern, folded):
-            return canonical
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Heading:
+    """What a heading stands for; ``unit`` and ``method`` as written, empty where not said."""
+
+    name: str  # of the property
+    unit: str
+    method: str
+
+
+@cache
+def _data() -> Mapping[str, Any]:
+    text = files("rca.intake").joinpath("oil_headers.toml").read_text(encoding="utf-8")
+    return tomllib.loads(text)
+
+
+@cache
+def _names() -> dict[str, str]:
+    found = {
+        fold(spelling): name
+        for name, row in _data()["property"].items()
+        for spelling in (name, *row.get("names", ()))
+    }
+    for symbol, words in _data()["element"].items():
+        found |= {fold(word): symbol for word in words}
+    return found
+
+
+@cache
+def _patterns() -> tuple[tuple[str, re.Pattern[str]], ...]:
+    return tuple(
+        (name, re.compile(pattern))
+        for name, row in _data()["property"].items()
+        for pattern in row.get("patterns", ())
+    )
+
+
+@cache
+def _meta_names() -> dict[str, str]:
+    return {
+        fold(spelling): name
+        for name, spellings in _data()["meta"].items()
+        for spelling in (name, *spellings)
+    }
+
+
+def words(kind: str) -> frozenset[str]:
+    """A list of words: new_oil, not_tested, not_detected or not_a_sample."""
+    return frozenset(_data()["words"][kind])
+
+
+def elements() -> tuple[str, ...]:
+    """Symbols of the elements the reader knows."""
+    return tuple(_data()["element"])
+
+
+def known_names() -> tuple[str, ...]:
+    """All names that may stand in case.toml."""
+    return (*_data()["property"], *elements(), *(m for m in _data()["meta"] if m != "date"))
+
+
+def fold(text: str) -> str:
+    """Lower case, accents and umlauts simplified, only letters, digits and single blanks."""
+    plain = unicodedata.normalize("NFKD", text.replace("ß", "ss").replace("ø", "o"))
+    plain = "".join(c for c in plain if not unicodedata.combining(c)).casefold()
+    plain = plain.replace("μ", "u").replace("µ", "u")
+    return re.sub(r"[^a-z0-9]+", " ", plain).strip()
+
+
+def _looked_up(text: str, names: Mapping[str, str]) -> str | None:
+    """The entry of a folded spelling; ae, oe and ue also stand for the umlauts."""
+    folded = fold(text)
+    return names.get(folded) or names.get(re.sub(r"([aou])e", r"\1", folded))
+
+
+def property_of(name: str) -> Property:
+    """The property by its canonical name or element symbol."""
+    row = _data()["property"].get(name, {"unit": "mg/kg", "low": -0.5, "high": 500000.0})
+    return Property(
+        name=name,
+        unit=row["unit"],
+        stated=bool(row.get("stated", False)),
+        low=float(row.get("low", float("-inf"))),
+        high=float(row.get("high", float("inf"))),
+    )
+
+
+@cache
+def heading_of(text: str) -> Heading | None:
+    """The property, unit and method a heading names, or None."""
+    plain = re.sub(r"\s+", " ", text.replace("_", " ")).strip()
+    method = _METHOD.search(plain)
+    written = method[0] if method is not None else ""
+    bare = plain.replace(written, " ").strip() if written else plain
+    bare = re.sub(r"[\[(]\s*[\])]", " ", bare).strip()
+    for body, unit in _splits(bare):
+        name = _name(body)
+        if name is not None and (not unit or unit_factor(name, unit) is not None):
+            return Heading(name=name, unit=unit, method="" if _SCALE.search(written) else written)
+        if name is not None and _foreign(unit):
+            return Heading(name=name, unit=unit, method=written)
     return None
 
 
-def recognise_meta(header: str) -> str | None:
-    """Which descriptive column a header stands for, or None."""
-    name, _ = split_unit(header)
-    folded = re.sub(r"[\s_]+", " ", name).strip().casefold()
-    for meta, pattern in META.items():
-        if folded == meta.replace("_", " ") or re.fullmatch(pattern, folded):
-            return meta
-    return None
+def _splits(text: str) -> list[tuple[str, str]]:
+    """Ways to part a heading into name and unit, the likeliest first."""
+    out = []
+    match = _BRACKETED.search(text)
+    if match is not None:
+        out.append((text[: match.start()].strip(), match[1]))
+        out.append((text.replace("(", " ").replace(")", " "), ""))
+    out.append((text, ""))
+    parts = re.split(r"[\s,;]+", text)
+    for k in range(len(parts) - 1, 0, -1):
+        out.append((" ".join(parts[:k]), " ".join(parts[k:])))
+    for k in range(1, min(len(parts), 3)):  # "cSt 40" and "ppm Fe"
+        out.append((" ".join(parts[k:]), " ".join(parts[:k])))
+    return out
 
 
-def canonical_unit(name: str) -> str:
-    """The unit a property is kept in."""
-    return PROPERTIES[name][0] if name in PROPERTIES else "mg/kg"
+def _name(text: str) -> str | None:
+    if text in elements():
+        return text
+    match = re.fullmatch(r"([A-Z][a-z]?)\W.*|.*\W\(?([A-Z][a-z]?)\)?", text)
+    folded = fold(text)
+    found = _looked_up(text, _names())
+    if found is None:
+        found = next((n for n, pattern in _patterns() if pattern.fullmatch(folded)), None)
+    if found is None and match is not None:  # "Iron (Fe)", "Fe - iron"
+        symbol = match[1] or match[2]
+        rest = fold(text.replace(symbol, " ", 1))
+        if symbol in elements() and _names().get(rest) == symbol:
+            found = symbol
+    return found
+
+
+@cache
+def meta_of(text: str) -> str | None:
+    """Which descriptive column a heading stands for, or None."""
+    match = _BRACKETED.search(text)
+    bare = text[: match.start()] if match is not None else text
+    return _looked_up(bare, _meta_names()) or _looked_up(text, _meta_names())
+
+
+def heading_unit(text: str) -> str:
+    """The bracketed unit of a heading, empty where there is none."""
+    match = _BRACKETED.search(text.strip())
+    return match[1] if match is not None else ""
+
+
+def fold_unit(unit: str) -> str:
+    """A written unit without blanks, in lower case, superscripts and µ made plain."""
+    plain = unicodedata.normalize("NFKC", unit).replace("μ", "u").replace("µ", "u")
+    return re.sub(r"\s+", "", plain).casefold().replace(",", ".").replace("mm^2", "mm2")
 
 
 def unit_factor(name: str, unit: str) -> float | None:
-    """Factor from a written unit to the canonical one; None where the unit does not fit."""
-    canonical = canonical_unit(name)
-    key = unit.strip().casefold()
-    if key == "":
+    """Factor from a written unit to the one kept; None where the unit does not fit."""
+    kept = property_of(name).unit if name not in ("h", "L") else name
+    if not unit.strip():
         return 1.0
-    return UNIT_FACTORS.get((canonical, key))
+    factor = _data()["units"].get(kept, {}).get(fold_unit(unit))
+    return float(factor) if factor is not None else None
+
+
+def _foreign(unit: str) -> bool:
+    """Units read with more than a factor, or refused with a reason of their own."""
+    folded = fold_unit(unit)
+    known = any(folded in table for table in _data()["units"].values())
+    return known or folded in ("mg/l", "°f", "degf", "f", "abs", "a", "vol%", "%v/v")

@@ -24,6 +24,7 @@ class Cell:
 
     text: str
     address: str  # "row 7, column Fe" style for CSV, "Sheet!C7" for XLSX
+    typed: str = ""  # of a workbook cell: "number" or "date"; its text then has a decimal point
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -134,12 +135,22 @@ def _xlsx(content: bytes, name: str, sheet: str) -> RawTable:
     page = book[sheet] if sheet else book[book.sheetnames[0]]
     rows = tuple(
         tuple(
-            Cell(text=_text(value), address=f"{page.title}!{get_column_letter(c)}{r}")
+            Cell(
+                text=_text(value),
+                address=f"{page.title}!{get_column_letter(c)}{r}",
+                typed=_typed(value),
+            )
             for c, value in enumerate(row, start=1)
         )
         for r, row in enumerate(page.iter_rows(values_only=True), start=1)
     )
     return RawTable(file=name, rows=rows, encoding="xlsx")
+
+
+def _typed(value: object) -> str:
+    if isinstance(value, date):
+        return "date"
+    return "number" if isinstance(value, int | float) and not isinstance(value, bool) else ""
 
 
 def _text(value: object) -> str:
