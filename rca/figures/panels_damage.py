@@ -51,6 +51,7 @@ def panels_damage(check: DamageCheck) -> Section:
                     for o in check.observations
                 ),
                 note="Notes are shown as written and carry no weight.",
+                shown=60,
             )
         )
     if check.unweighed:

@@ -101,15 +101,16 @@ def new_figure(
     height_ratios: list[float] | None = None,
 ) -> tuple[Figure, list[Axes]]:
     """A figure of the house and its axes, row by row."""
-    with mpl.rc_context(rc()):
-        figure = Figure(figsize=(width_in, height_in), layout="constrained")
-        grid = figure.subplots(
-            rows,
-            columns,
-            sharex=sharex,
-            squeeze=False,
-            gridspec_kw={"height_ratios": height_ratios} if height_ratios else None,
-        )
+    # Texts take their font from these settings when they are made, which is after this returns.
+    mpl.rcParams.update(rc())
+    figure = Figure(figsize=(width_in, height_in), layout="constrained")
+    grid = figure.subplots(
+        rows,
+        columns,
+        sharex=sharex,
+        squeeze=False,
+        gridspec_kw={"height_ratios": height_ratios} if height_ratios else None,
+    )
     return figure, list(grid.flat)
 
 

@@ -85,13 +85,8 @@ def burst(seed: int, *, rate_hz: float = 50_000.0, seconds: float = 2.0) -> dict
         for k, amp, phase in ((1, 4.2, 0.1), (2, 1.9, 1.1), (3, 0.8, 2.0), (4, 0.3, 0.4))
     )
     level = np.full_like(t, 38.0)
-    for begin in (0.55, 1.45):
-        level += (
-            (t > begin)
-            * (172.0 if begin < 1 else 0.0)
-            * (1 - np.exp(-np.maximum(t - begin, 0) / 0.0011))
-        )
-    level -= (t > 1.2) * 172.0 * (1 - np.exp(-np.maximum(t - 1.2, 0) / 0.02)) * (t < 1.45)
+    for begin, step, tau in ((0.55, 172.0, 0.0011), (1.2, -172.0, 0.02), (1.6, 172.0, 0.0013)):
+        level += np.where(t > begin, step * (1 - np.exp(-np.maximum(t - begin, 0) / tau)), 0.0)
     spikes = np.zeros_like(t)
     for place in rng.integers(2000, t.size - 2000, 40):
         spikes[place : place + 40] += rng.uniform(4, 16) * np.exp(-np.arange(40) / 8.0)
