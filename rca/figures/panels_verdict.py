@@ -118,7 +118,7 @@ def _weight(check: VerdictCheck) -> Panel:
         if check.evidence
         else ()
     )
-    scale = "; ".join(f"to {int(top):,}: {words}".replace(",", "\u2009") for top, words in SCALE)
+    scale = "; ".join(f"to {top:g}: {words}" for top, words in SCALE)
     return Panel(
         key="verdict.weight",
         title="Weight of evidence",

@@ -6,9 +6,11 @@ from rca.evidence.item import NotAssessed
 from rca.verdict.model import Robustness, WeighedItem, Words
 
 # Verbal scale of likelihood ratios as forensic guidance on evaluative reporting prints it
-# (ENFSI 2015, from memory; read in secondary sources). Edge values belong to the lower band.
+# (ENFSI 2015, from memory; read in secondary sources, some of which begin "weak" at 2). Edge
+# values belong to the lower band; below DULL an item favours neither way.
+DULL = 1.05
 SCALE = (
-    (2.0, "no support either way"),
+    (DULL, "no support either way"),
     (10.0, "weak support"),
     (100.0, "moderate support"),
     (1_000.0, "moderately strong support"),

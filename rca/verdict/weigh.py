@@ -10,7 +10,7 @@ from scipy.stats import norm, qmc
 
 from rca.case.vocabulary import DISCHARGE_MECHANISMS, MECHANISMS, SUCTION_MECHANISMS
 from rca.evidence.item import EvidenceItem, NotAssessed
-from rca.verdict.explain import explain, verbal
+from rca.verdict.explain import DULL, explain, verbal
 from rca.verdict.inference import joint
 from rca.verdict.knowledge import Knowledge
 from rca.verdict.model import (
@@ -35,7 +35,6 @@ from rca.verdict.side import side_of
 FloatArray = npt.NDArray[np.float64]
 DRAWS = 2048
 CHUNK = 64
-DULL = 1.05  # a ratio nearer to 1 than this favours neither way
 MOST_REMOVED = 3  # items taken out together in the search for a flip
 
 
