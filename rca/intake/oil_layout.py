@@ -11,7 +11,6 @@ from rca.intake.oil_properties import (
     heading_of,
     heading_unit,
     meta_of,
-    property_of,
     unit_factor,
     words,
 )
@@ -156,8 +155,12 @@ def _with_second(above: str, below: str) -> str:
     if heading is not None and not heading.unit:
         fits = unit_factor(heading.name, bare) is not None or bare.casefold() in ("mg/l", "°f")
         return f"{above} [{bare}]" if fits and bare not in ("", "-") else above
+    if meta_of(f"{above} {below}") is not None:
+        return f"{above} {below}"
     if meta_of(above) is not None:
         return f"{above} [{bare}]" if bare else above
+    if heading_of(f"{above} {below}") is None and (heading_of(below) or meta_of(below)):
+        return below
     return f"{above} {below}"
 
 
@@ -208,8 +211,3 @@ def is_no_sample(row: tuple[Cell, ...], layout: Layout) -> str:
     if first and first[0] in words("not_a_sample") | {"unit", "units", "einheit", "method"}:
         return "a row of limits, totals or units, not a sample"
     return ""
-
-
-def kept_unit_of(name: str) -> str:
-    """The unit a property is kept in, for a proposal."""
-    return property_of(name).unit

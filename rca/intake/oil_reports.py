@@ -7,17 +7,19 @@ from datetime import date
 from pathlib import Path
 
 from rca.base.errors import KnowledgeError, Problem, Severity
+from rca.base.source import Source
 from rca.case.model import Case, Excluded, OilReportFile
 from rca.case.oil import OilSample, UnreadCell
 from rca.intake.oil_cells import decimal_mark
-from rca.intake.oil_layout import Layout, kept_unit_of, layout_of
-from rca.intake.oil_properties import fold, heading_of, known_names
+from rca.intake.oil_layout import Layout, layout_of
+from rca.intake.oil_properties import fold, heading_of, known_names, property_of
 from rca.intake.oil_samples import Kept, SampleReader
 from rca.intake.tables import TableError, read_table
 from rca.intake.words import nearest
 from rca.oil.limits import Limit, read_limits
 
 SITE_LIMITS = "oil/limits.toml"
+_PROPERTIES = tuple(name for name in known_names() if len(name) > 2 and heading_of(name))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -59,7 +61,9 @@ def read_oil_reports(folder: Path, case: Case) -> OilReading:
             kept=kept,
         )
         samples += reader.samples(layout)
+        kept.unread += _unknown_columns(report, layout, reader.sha256)
         proposals += _proposals(report, layout)
+    limits = _site_limits(folder, kept)
     settled = _settled(samples, kept)
     marked = [one for sample in settled if (one := _marked(sample, case, kept)) is not None]
     marked.sort(key=lambda s: (s.sampled or date.min, s.id, s.revision, s.retest))
@@ -68,7 +72,7 @@ def read_oil_reports(folder: Path, case: Case) -> OilReading:
         unread=tuple(kept.unread),
         problems=tuple(kept.problems),
         proposals=tuple(proposals),
-        limits=_site_limits(folder, kept),
+        limits=limits,
     )
 
 
@@ -150,18 +154,36 @@ def _proposals(report: OilReportFile, layout: Layout) -> list[str]:
     """Lines for case.toml: columns the reader does not know, and units that are not said."""
     lines = []
     for _, title in layout.unknown:
-        near = nearest(fold(title).replace(" ", "_"), known_names(), most=1)
-        guess = (
-            f"{near[0]} [{kept_unit_of(near[0])}]" if near and heading_of(near[0]) else "ignore"
-        )
-        lines.append(f'{report.file}: columns = {{ "{_toml(title)}" = "{guess}" }}')
+        near = nearest(fold(title).replace(" ", "_"), _PROPERTIES, most=1)
+        guess = f"{near[0]} [{property_of(near[0]).unit}]" if near else "ignore"
+        lines.append(_line(report, title, guess))
     for column in layout.columns:
-        name = column.heading.name
-        if not column.heading.unit and name in ("oxidation", "nitration", "sulfation", "soot"):
-            lines.append(
-                f'{report.file}: columns = {{ "{_toml(column.title)}" = "{name} [A/cm]" }}'
-            )
+        kept = property_of(column.heading.name)
+        if not column.heading.unit and kept.stated:
+            lines.append(_line(report, column.title, f"{kept.name} [{kept.unit}]"))
     return lines
+
+
+def _line(report: OilReportFile, title: str, meaning: str) -> str:
+    return f'{report.file}: columns = {{ "{_toml(title)}" = "{meaning}" }}'
+
+
+def _unknown_columns(report: OilReportFile, layout: Layout, sha256: str) -> list[UnreadCell]:
+    """One entry for each column nobody knows."""
+    found = []
+    for index, title in layout.unknown:
+        if layout.kind == "long":
+            continue
+        cells = [row[index] for row in layout.body if index < len(row) and row[index].text.strip()]
+        if cells:
+            found.append(
+                UnreadCell(
+                    source=Source(file=report.file, locator=cells[0].address, sha256=sha256),
+                    text=title,
+                    reason=f"a column this program doesn't know; {len(cells)} cells not used",
+                )
+            )
+    return found
 
 
 def _toml(text: str) -> str:
