@@ -33,7 +33,7 @@ _FAILURES = {
     4: f"the gas passed {T_MAX:g} K, the end of its property table",
 }
 CORE_GRID = (48, 24)  # gas and oil cells of a single history
-BATCH_GRID = (32, 14)  # of a batch; within 0.5 % of the rise of the fine grid
+BATCH_GRID = (24, 10)  # of a batch; within 0.5 % of the rise of the fine grid
 THRESHOLDS = (800.0, 1000.0)  # [K], times above these are reported
 
 

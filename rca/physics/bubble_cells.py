@@ -51,6 +51,8 @@ OK, TOO_SMALL_STEP, NOT_FINITE, TOO_MANY_STEPS, OUTSIDE_TABLE = 0, 1, 2, 3, 4
     O_REJECTED,
 ) = range(14)
 
+# Sums may be reordered and divisions shared; NaN and infinity keep their meaning.
+FAST = {"reassoc", "contract", "arcp"}
 TABLE_START, TABLE_STEP = 200.0, 5.0  # gas properties: rows cp, k at every 5 K from 200 K
 
 
@@ -81,8 +83,25 @@ def _oil_grid(n_oil: int, first: float, extent: float, radius: float, faces: np.
         faces[j] = (radius + depth) ** 3 - radius**3
 
 
-@njit(cache=True, nogil=True)
-def _gas_cells(
+@njit(cache=True, nogil=True, fastmath=FAST)
+def _roots(n: int, volumes: np.ndarray, faces: np.ndarray) -> None:
+    """Cube roots by two Halley steps from the last values; exact roots where those fail."""
+    worst = 0.0
+    for i in range(n):
+        v, x = volumes[i], faces[i]
+        c = x * x * x
+        x *= (c + 2.0 * v) / (2.0 * c + v)
+        c = x * x * x
+        x *= (c + 2.0 * v) / (2.0 * c + v)
+        faces[i] = x
+        worst = max(worst, abs(x * x * x - v) / v)
+    if not worst <= 1e-13:
+        for i in range(n):
+            faces[i] = np.cbrt(volumes[i])
+
+
+@njit(cache=True, nogil=True, fastmath=FAST)
+def _properties(
     n_gas: int,
     y: np.ndarray,
     p: float,
@@ -90,62 +109,55 @@ def _gas_cells(
     mass: np.ndarray,
     table: np.ndarray,
     cap: np.ndarray,
-    cond: np.ndarray,
-) -> tuple[float, float, float]:
-    """Heat capacities and face conductances of the gas; radius, last centre, last conductivity."""
-    rs = par[P_GAS_CONSTANT]
-    volume, face, centre, k_before = 0.0, 0.0, 0.0, 0.0
+    scratch: np.ndarray,
+) -> float:
+    """Heat capacities, conductivities (row 2) and face volumes (row 0) of the gas; r^3."""
+    by = par[P_GAS_CONSTANT] / p
+    factor = par[P_CONDUCTION_FACTOR]
+    volume = 0.0
     top = table.shape[1] - 2
     for i in range(n_gas):
         t = y[2 + i]
         place = (t - TABLE_START) / TABLE_STEP
         j = min(max(int(place), 0), top)
         f = place - j
-        k = (table[1, j] + f * (table[1, j + 1] - table[1, j])) * par[P_CONDUCTION_FACTOR]
+        scratch[2, i] = (table[1, j] + f * (table[1, j + 1] - table[1, j])) * factor
         cap[i] = mass[i] * (table[0, j] + f * (table[0, j + 1] - table[0, j]))
-        volume += rs * mass[i] * t / p
-        outer = np.cbrt(volume)
-        middle = 0.5 * (face + outer)
-        if i > 0:
-            cond[i - 1] = 1.5 * (k + k_before) * face * face / (middle - centre)
-        face, centre, k_before = outer, middle, k
-    return face, centre, k_before
+        volume += by * mass[i] * t
+        scratch[0, i] = volume
+    return float(volume)
 
 
-@njit(cache=True, nogil=True)
-def _oil_cells(
+@njit(cache=True, nogil=True, fastmath=FAST)
+def _conductances(
     n_gas: int,
     n_all: int,
-    radius: float,
-    centre: float,
-    k_gas: float,
     par: np.ndarray,
     oil: np.ndarray,
     cap: np.ndarray,
     cond: np.ndarray,
+    scratch: np.ndarray,
 ) -> float:
-    """The same for the oil and the wall; returns the weight of the gas side at the wall."""
-    k_oil = par[P_OIL_CONDUCTIVITY]
-    cube = radius**3
-    face = radius
-    before, volume_before, weight = 0.0, 0.0, 0.0
+    """Conductances of all faces from their radii (row 1); the gas side's weight at the wall."""
+    faces, k = scratch[1], scratch[2]
+    k_oil, capacity = par[P_OIL_CONDUCTIVITY], par[P_OIL_CAPACITY]
+    for i in range(n_gas - 1):
+        inner = faces[i - 1] if i > 0 else 0.0
+        cond[i] = 3.0 * (k[i] + k[i + 1]) * faces[i] * faces[i] / (faces[i + 1] - inner)
     for i in range(n_gas, n_all):
-        volume = oil[i - n_gas]
-        outer = np.cbrt(cube + volume)
-        middle = 0.5 * (face + outer)
-        cap[i] = par[P_OIL_CAPACITY] * (volume - volume_before)
-        if i == n_gas:
-            inside = 3.0 * k_gas * radius * radius / (radius - centre)
-            outside = 3.0 * k_oil * radius * radius / (middle - radius)
-            cond[i - 1] = inside * outside / (inside + outside)
-            weight = inside / (inside + outside)
-        else:
-            cond[i - 1] = 3.0 * k_oil * face * face / (middle - before)
-        face, before, volume_before = outer, middle, volume
-    return weight
+        before = oil[i - n_gas - 1] if i > n_gas else 0.0
+        cap[i] = capacity * (oil[i - n_gas] - before)
+        if i < n_all - 1:
+            cond[i] = 6.0 * k_oil * faces[i] * faces[i] / (faces[i + 1] - faces[i - 1])
+    radius = faces[n_gas - 1]
+    square = 6.0 * radius * radius
+    inside = square * k[n_gas - 1] / (radius - faces[n_gas - 2])
+    outside = square * k_oil / (faces[n_gas] - radius)
+    cond[n_gas - 1] = inside * outside / (inside + outside)
+    return float(inside / (inside + outside))
 
 
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
 def evaluate(
     inertial: bool,
     n_gas: int,
@@ -159,32 +171,44 @@ def evaluate(
     table: np.ndarray,
     cap: np.ndarray,
     cond: np.ndarray,
+    scratch: np.ndarray,
     dy: np.ndarray,
     side: np.ndarray,
 ) -> None:
-    """Right-hand side dy; ``side`` = p, dp/dt, R, wall weight, D, sum(mass T)."""
+    """Right-hand side dy; ``side`` = p, dp/dt, R, wall weight, D, sum(mass T).
+
+    ``scratch`` has three rows; row 1 keeps the face radii as first guesses for the next call.
+    """
     rs = par[P_GAS_CONSTANT]
     heat = 0.0
     for i in range(n_gas):
         heat += mass[i] * y[2 + i]
     p = rs * heat / y[0] ** 3 if inertial else p_line
-    radius, centre, k_gas = _gas_cells(n_gas, y, p, par, mass, table, cap, cond)
-    weight = _oil_cells(n_gas, n_all, radius, centre, k_gas, par, oil, cap, cond)
-    flow, heating, give = 0.0, 0.0, 0.0
-    for i in range(n_all):
-        out = cond[i] * (y[2 + i] - y[3 + i]) if i < n_all - 1 else 0.0
-        dy[2 + i] = (flow - out) / cap[i]
-        if i < n_gas:
-            heating += rs * mass[i] * dy[2 + i]
-            give += (rs * mass[i]) ** 2 * y[2 + i] / (p * cap[i])
-        flow = out
-    cube = radius**3
+    cube = _properties(n_gas, y, p, par, mass, table, cap, scratch)
+    for i in range(n_gas, n_all):
+        scratch[0, i] = cube + oil[i - n_gas]
+    _roots(n_all, scratch[0], scratch[1])
+    weight = _conductances(n_gas, n_all, par, oil, cap, cond, scratch)
+    radius = scratch[1, n_gas - 1]
+    dy[2] = -cond[0] * (y[2] - y[3]) / cap[0]
+    last = n_all - 1
+    for i in range(1, last):
+        gain = cond[i - 1] * (y[1 + i] - y[2 + i])
+        dy[2 + i] = (gain - cond[i] * (y[2 + i] - y[3 + i])) / cap[i]
+    dy[2 + last] = cond[last - 1] * (y[1 + last] - y[2 + last]) / cap[last]
+    heating, give = 0.0, 0.0
+    for i in range(n_gas):
+        part = rs * mass[i]
+        own = part * y[2 + i] / (p * cap[i])
+        scratch[2, i] = own
+        heating += part * dy[2 + i]
+        give += part * own
     spare = cube - give
     dp = dp_line
     if inertial:
         dp = (heating - 3.0 * p * radius * radius * y[1]) / spare
     for i in range(n_gas):
-        dy[2 + i] += rs * mass[i] * y[2 + i] * dp / (p * cap[i])
+        dy[2 + i] += scratch[2, i] * dp
     side[0], side[1], side[2], side[3], side[4], side[5] = p, dp, radius, weight, spare, heat
     dy[0], dy[1] = 0.0, 0.0
     if inertial:

@@ -51,7 +51,7 @@ def _factor(
     diag: np.ndarray,
     up: np.ndarray,
 ) -> None:
-    """LU of I - hg J for the conduction part; ``own`` is the local compression term."""
+    """LU of I - hg J for conduction, ``diag`` inverted; ``own`` is the compression term."""
     for i in range(n_all):
         left = cond[i - 1] if i > 0 else 0.0
         right = cond[i] if i < n_all - 1 else 0.0
@@ -59,8 +59,9 @@ def _factor(
         up[i] = -hg * right / cap[i]
         low[i] = -hg * left / cap[i]
         if i > 0:
-            low[i] /= diag[i - 1]
+            low[i] *= diag[i - 1]
             diag[i] -= low[i] * up[i - 1]
+        diag[i] = 1.0 / diag[i]
 
 
 @njit(cache=True, nogil=True)
@@ -68,9 +69,9 @@ def _solve(n_all: int, low: np.ndarray, diag: np.ndarray, up: np.ndarray, x: np.
     """Solve in place; ``x`` starts at its temperature part."""
     for i in range(1, n_all):
         x[i] -= low[i] * x[i - 1]
-    x[n_all - 1] /= diag[n_all - 1]
+    x[n_all - 1] *= diag[n_all - 1]
     for i in range(n_all - 2, -1, -1):
-        x[i] = (x[i] - up[i] * x[i + 1]) / diag[i]
+        x[i] = (x[i] - up[i] * x[i + 1]) * diag[i]
 
 
 @njit(cache=True, nogil=True)
@@ -169,6 +170,7 @@ def _one_step(
     oil: np.ndarray,
     table: np.ndarray,
     cells: np.ndarray,
+    scratch: np.ndarray,
     rows: np.ndarray,
     stages: np.ndarray,
     side: np.ndarray,
@@ -197,19 +199,21 @@ def _one_step(
         if s == 0:
             rate[:n] = first[:n]
         else:
-            for i in range(n):
-                trial[i] = y[i]
-                for j in range(s):
-                    trial[i] += STAGE[s, j] * stages[j, i]
+            trial[:n] = y
+            for j in range(s):
+                a, done = STAGE[s, j], stages[j]
+                for i in range(n):
+                    trial[i] += a * done[i]
             dt = NODES[s] * h
             evaluate(inertial, n_gas, n_all, trial, p_line + slope * dt, slope, par, mass, oil,
-                     table, cells[7], cells[8], rate, aside)  # fmt: skip
+                     table, cells[7], cells[8], scratch, rate, aside)  # fmt: skip
         x = stages[s]
         for i in range(n):
-            x[i] = rate[i]
-            for j in range(s):
-                x[i] += COUPLING[s, j] * stages[j, i] / h
-            x[i] *= hg
+            x[i] = hg * rate[i]
+        for j in range(s):
+            a, done = GAMMA * COUPLING[s, j], stages[j]
+            for i in range(n):
+                x[i] += a * done[i]
         _solve(n_all, cells[2], cells[3], cells[4], x[2:])
         if inertial:
             _solve_bordered(n_all, hg, rows, edge, cells[6], x)
@@ -236,7 +240,7 @@ def run(
     """One history through the piecewise linear line pressure; returns the rows of ``history``."""
     n_all = n_gas + n_oil
     mass, oil = np.zeros(n_all), np.empty(n_oil)
-    cells, rows = np.empty((9, n_all)), np.empty((3, n_all))
+    cells, rows, scratch = np.empty((9, n_all)), np.empty((3, n_all)), np.zeros((3, n_all))
     stages, side, edge, before = np.empty((7, n_all + 2)), np.empty(6), np.empty(4), np.zeros(2)
     first, new, err = np.empty(n_all + 2), np.empty(n_all + 2), np.empty(n_all + 2)
     start(inertial, n_gas, n_oil, t_nodes, p_nodes, par, mass, oil, y, out)
@@ -245,7 +249,7 @@ def run(
     h = 1e-4 * par[P_RAMP_END]
     slope = (p_nodes[1] - p_nodes[0]) / (t_nodes[1] - t_nodes[0])
     evaluate(inertial, n_gas, n_all, y, p_nodes[0], slope, par, mass, oil, table, cells[0],
-             cells[1], first, side)  # fmt: skip
+             cells[1], scratch, first, side)  # fmt: skip
     count = record(t, n_gas, y, side, mass, history, count)
     while True:
         step = min(h, t_nodes[segment + 1] - t)
@@ -259,12 +263,13 @@ def run(
             break
         p_line = p_nodes[segment] + slope * (t - t_nodes[segment])
         _one_step(inertial, n_gas, n_all, step, p_line, slope, y, par, mass, oil, table, cells,
-                  rows, stages, side, edge, first)  # fmt: skip
-        for i in range(n_all + 2):
-            new[i], err[i] = y[i], 0.0
-            for s in range(4):
-                new[i] += NEW[s] * stages[s, i]
-                err[i] += ERROR[s] * stages[s, i]
+                  scratch, rows, stages, side, edge, first)  # fmt: skip
+        new[:], err[:] = y, 0.0
+        for s in range(4):
+            a, b, done = NEW[s], ERROR[s], stages[s]
+            for i in range(n_all + 2):
+                new[i] += a * done[i]
+                err[i] += b * done[i]
         size = _norm(inertial, n_all, y, new, err, side[0], par)
         if not np.isfinite(size) or new[2] < TABLE_START or (inertial and new[0] <= 0.0):
             size = 1e3
@@ -290,7 +295,7 @@ def run(
             p_nodes[segment] + slope * (t - t_nodes[segment]) if segment < last else p_nodes[last]
         )
         evaluate(inertial, n_gas, n_all, y, p_line, slope, par, mass, oil, table, cells[0],
-                 cells[1], first, side)  # fmt: skip
+                 cells[1], scratch, first, side)  # fmt: skip
         y[0] = side[2]
         note(t, step, n_gas, y, side, before, mass, par, limits, delays, frame, out)
         count = record(t, n_gas, y, side, mass, history, count)

@@ -37,7 +37,7 @@ def lumped_batch(
     *,
     hold: npt.ArrayLike | None = None,
     oil: OilSide | None = None,
-    tolerance: float = 5e-4,
+    tolerance: float = 8e-4,
     conduction_factor: npt.ArrayLike = 1.0,
     workers: int = 1,
 ) -> LumpedPeaks:

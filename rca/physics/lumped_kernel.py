@@ -9,6 +9,7 @@ import numpy as np
 from numba import njit
 
 from rca.physics.bubble_cells import (
+    FAST,
     NOT_FINITE,
     P_CONDUCTION_FACTOR,
     P_GAS_CONSTANT,
@@ -24,13 +25,19 @@ from rca.physics.bubble_cells import (
     TOO_MANY_STEPS,
     wall_acceleration,
 )
-from rca.physics.rosenbrock import COUPLING, ERROR, GAMMA, NEW, NODES, STAGE
+from rca.physics.rosenbrock import (
+    RODAS_COUPLING,
+    RODAS_GAMMA,
+    RODAS_NODES,
+    RODAS_STAGE,
+    RODAS_TIME,
+)
 
 L_STATUS, L_MEAN, L_PRESSURE, L_RADIUS_MIN, L_STEPS, L_TIME = range(6)
 _MOST_STEPS = 200_000
 
 
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
 def lumped_rate(
     y: np.ndarray,
     p_line: float,
@@ -39,9 +46,8 @@ def lumped_rate(
     mass: float,
     table: np.ndarray,
     dy: np.ndarray,
-    side: np.ndarray,
 ) -> float:
-    """Right-hand side; returns the gas pressure, leaves ``side`` for the Jacobian."""
+    """Right-hand side; returns the gas pressure."""
     r, u, t = y[0], y[1], y[2]
     rs = par[P_GAS_CONSTANT]
     place = (t - TABLE_START) / TABLE_STEP
@@ -54,37 +60,42 @@ def lumped_rate(
     layer = r / np.pi
     if abs(u) * layer * layer > r * diffusivity:
         layer = np.sqrt(r * diffusivity / abs(u))
-    side[0], side[1] = 3.0 * r * r * k / layer, mass * (cp - rs)
-    heat = side[0] * (par[P_TEMPERATURE] - t)
-    dt = (heat - 3.0 * p * r * r * u) / side[1]
+    heat = 3.0 * r * r * k * (par[P_TEMPERATURE] - t) / layer
+    dt = (heat - 3.0 * p * r * r * u) / (mass * (cp - rs))
     dp = p * (dt / t - 3.0 * u / r)
     dy[0], dy[2] = u, dt
     dy[1] = wall_acceleration(r, u, p, dp, p_line, dp_line, par)
     return float(p)
 
 
-@njit(cache=True, nogil=True)
-def _jacobian(y: np.ndarray, p: float, side: np.ndarray, par: np.ndarray, jac: np.ndarray) -> None:
-    """The stiff couplings, by hand; the integrator keeps its order for any Jacobian.
+@njit(cache=True, nogil=True, fastmath=FAST)
+def _jacobian(
+    y: np.ndarray,
+    p_line: float,
+    dp_line: float,
+    par: np.ndarray,
+    mass: float,
+    table: np.ndarray,
+    base: np.ndarray,
+    work: np.ndarray,
+    jac: np.ndarray,
+) -> float:
+    """Jacobian by forward differences; returns the time derivative of the acceleration."""
+    moved, rate = work[6], work[7]
+    for j in range(3):
+        for i in range(3):
+            moved[i] = y[i]
+        step = 1e-7 * (abs(y[j]) + (1e-3 if j == 1 else 0.0))
+        moved[j] += step
+        lumped_rate(moved, p_line, dp_line, par, mass, table, rate)
+        for i in range(3):
+            jac[i, j] = (rate[i] - base[i]) / step
+    r, u, c = y[0], y[1], par[P_SOUND]
+    heavy = (1.0 - u / c) * r * par[P_OIL_DENSITY] + 4.0 * par[P_OIL_VISCOSITY] / c
+    return float(-dp_line * (1.0 + u / c) / heavy)
 
-    ``side`` = heat loss per kelvin and heat capacity at constant volume, of the last rate.
-    """
-    r, u, t = y[0], y[1], y[2]
-    c, rho, mu = par[P_SOUND], par[P_OIL_DENSITY], par[P_OIL_VISCOSITY]
-    heavy = rho * ((1.0 - u / c) * r + 4.0 * mu / (rho * c))
-    by_p = (1.0 + u / c) / heavy
-    jac[0, 0], jac[0, 1], jac[0, 2] = 0.0, 1.0, 0.0
-    jac[2, 0] = 0.0
-    jac[2, 1] = -3.0 * p * r * r / side[1]
-    jac[2, 2] = -(side[0] + 3.0 * p * r * r * u / t) / side[1]
-    jac[1, 0] = by_p * (-3.0 * p / r + 2.0 * par[P_TENSION] / (r * r))
-    rate = r / (c * heavy)
-    jac[1, 1] = -4.0 * mu * by_p / r - 3.0 * u * rho / heavy
-    jac[1, 1] += rate * p * (jac[2, 1] / t - 3.0 / r)
-    jac[1, 2] = by_p * p / t + rate * p * jac[2, 2] / t
 
-
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
 def _invert(hg: float, jac: np.ndarray, inv: np.ndarray) -> None:
     """Inverse of I - hg J, three by three."""
     a, b, c = 1.0 - hg * jac[0, 0], -hg * jac[0, 1], -hg * jac[0, 2]
@@ -108,11 +119,12 @@ def _invert(hg: float, jac: np.ndarray, inv: np.ndarray) -> None:
     )
 
 
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
 def _step(
     h: float,
     p_line: float,
     slope: float,
+    by_time: float,
     y: np.ndarray,
     first: np.ndarray,
     par: np.ndarray,
@@ -121,38 +133,37 @@ def _step(
     work: np.ndarray,
     inv: np.ndarray,
 ) -> None:
-    """The four stages of one step, in rows 0 to 3 of ``work``; rows 4 to 7 are scratch."""
-    hg = h * GAMMA
-    trial, rate, right = work[4], work[5], work[6]
-    for s in range(4):
+    """The six stages of one step, in rows 0 to 5 of ``work``; rows 6 to 8 are scratch."""
+    hg = h * RODAS_GAMMA
+    trial, rate, right = work[6], work[7], work[8]
+    for s in range(6):
         for i in range(3):
             trial[i] = y[i]
             right[i] = 0.0
             for j in range(s):
-                trial[i] += STAGE[s, j] * work[j, i]
-                right[i] += COUPLING[s, j] * work[j, i]
+                trial[i] += RODAS_STAGE[s, j] * work[j, i]
+                right[i] += RODAS_COUPLING[s, j] * work[j, i]
         if s == 0:
             for i in range(3):
                 rate[i] = first[i]
         else:
-            lumped_rate(
-                trial, p_line + slope * NODES[s] * h, slope, par, mass, table, rate, work[7]
-            )
+            lumped_rate(trial, p_line + slope * RODAS_NODES[s] * h, slope, par, mass, table, rate)
+        rate[1] += h * RODAS_TIME[s] * by_time
         for i in range(3):
-            right[i] = hg * rate[i] + GAMMA * right[i]
+            right[i] = hg * rate[i] + RODAS_GAMMA * right[i]
         for i in range(3):
             work[s, i] = inv[i, 0] * right[0] + inv[i, 1] * right[1] + inv[i, 2] * right[2]
 
 
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
 def _size(y: np.ndarray, new: np.ndarray, work: np.ndarray, p: float, par: np.ndarray) -> float:
     """Root mean square of the weighted error of the step; also writes the new state."""
     square = 0.0
     for i in range(3):
-        total, error = y[i], 0.0
-        for s in range(4):
-            total += NEW[s] * work[s, i]
-            error += ERROR[s] * work[s, i]
+        error = work[5, i]
+        total = y[i] + error
+        for j in range(5):
+            total += RODAS_STAGE[5, j] * work[j, i]
         new[i] = total
         scale = max(abs(y[i]), abs(total))
         if i == 1:
@@ -163,7 +174,21 @@ def _size(y: np.ndarray, new: np.ndarray, work: np.ndarray, p: float, par: np.nd
     return float(np.sqrt(square / 3.0) / par[P_TOLERANCE])
 
 
-@njit(cache=True, nogil=True)
+@njit(cache=True, nogil=True, fastmath=FAST)
+def _crest(a: float, b: float, slope_a: float, slope_b: float, h: float) -> float:
+    """Largest value of the cubic through two points with their slopes, a step ``h`` apart."""
+    best = max(a, b)
+    if slope_a <= 0.0 or slope_b >= 0.0:
+        return best
+    c, d = h * slope_a, h * slope_b
+    # derivative of the Hermite cubic: q2 x^2 + q1 x + c
+    q2, q1 = 6.0 * (a - b) + 3.0 * (c + d), 6.0 * (b - a) - 4.0 * c - 2.0 * d
+    x = 2.0 * c / (np.sqrt(max(q1 * q1 - 4.0 * q2 * c, 0.0)) - q1)
+    value = a + x * (c + x * (0.5 * q1 + x * q2 / 3.0))
+    return max(best, value) if 0.0 <= x <= 1.0 else best
+
+
+@njit(cache=True, nogil=True, fastmath=FAST)
 def run_lumped(
     ramps: np.ndarray,
     pars: np.ndarray,
@@ -174,8 +199,7 @@ def run_lumped(
 ) -> None:
     """Linear ramps with a hold; a ramp row = p1, p2, rise, end time."""
     y, new, first = np.empty(3), np.empty(3), np.empty(3)
-    side = np.empty(2)
-    work, jac, inv = np.empty((8, 3)), np.empty((3, 3)), np.empty((3, 3))
+    work, jac, inv = np.empty((9, 3)), np.empty((3, 3)), np.empty((3, 3))
     for n in range(begin, end):
         par, out = pars[n], outs[n]
         p1, p2, rise, last = ramps[n, 0], ramps[n, 1], ramps[n, 2], ramps[n, 3]
@@ -185,7 +209,7 @@ def run_lumped(
         out[:] = 0.0
         out[L_MEAN], out[L_PRESSURE], out[L_RADIUS_MIN] = y[2], gas, y[0]
         t, h, corner, slope = 0.0, 1e-4 * rise, rise, (p2 - p1) / rise
-        p = lumped_rate(y, p1, slope, par, mass, table, first, side)
+        p = lumped_rate(y, p1, slope, par, mass, table, first)
         while True:
             lands = h >= corner - t
             step = corner - t if lands else h
@@ -194,29 +218,31 @@ def run_lumped(
                 out[L_STATUS] = TOO_MANY_STEPS
                 break
             line = p1 + slope * t if corner == rise else p2
-            _jacobian(y, p, side, par, jac)
-            _invert(step * GAMMA, jac, inv)
-            _step(step, line, slope, y, first, par, mass, table, work, inv)
+            by_time = _jacobian(y, line, slope, par, mass, table, first, work, jac)
+            _invert(step * RODAS_GAMMA, jac, inv)
+            _step(step, line, slope, by_time, y, first, par, mass, table, work, inv)
             size = _size(y, new, work, p, par)
             if new[0] <= 0.0 or new[2] < TABLE_START:
                 size = 1e30
             if size > 1.0:
-                h = step * max(0.2, 0.9 * (size + 1e-12) ** (-1.0 / 3.0))
+                h = step * max(0.2, 0.9 * (size + 1e-12) ** (-0.25))
                 if h < 1e-12 * rise:
                     out[L_STATUS] = NOT_FINITE
                     break
                 continue
-            grown = step * min(4.0, 0.9 * (size + 1e-12) ** (-1.0 / 3.0))
+            grown = step * min(4.0, 0.9 * (size + 1e-12) ** (-0.25))
             t = corner if lands else t + step
             h = max(h, grown) if lands else grown
+            before, rate_before = y[2], first[2]
             y[0], y[1], y[2] = new[0], new[1], new[2]
             if lands and corner == last:
                 slope = 0.0
             elif lands:
                 corner, slope = last, 0.0
             line = p1 + slope * t if corner == rise else p2
-            p = lumped_rate(y, line, slope, par, mass, table, first, side)
-            out[L_MEAN] = max(out[L_MEAN], y[2])
+            p = lumped_rate(y, line, slope, par, mass, table, first)
+            crest = _crest(before, y[2], rate_before, first[2], step)
+            out[L_MEAN] = max(out[L_MEAN], crest)
             out[L_PRESSURE] = max(out[L_PRESSURE], p)
             out[L_RADIUS_MIN] = min(out[L_RADIUS_MIN], y[0])
             out[L_TIME] = t

@@ -13,6 +13,11 @@ def machine():
 
     return Case(
         header=Header(id="B-1", title="Benchmark"),
-        pump=Pump(kind=PumpKind.AXIAL_PISTON, speed=reading(1480 / 60, "1/s"), discharge_pressure=reading(211e5, "Pa"), transition_angle=reading(0.20944, "rad")),  # fmt: skip
+        pump=Pump(
+            kind=PumpKind.AXIAL_PISTON,
+            speed=reading(1480 / 60, "1/s"),
+            discharge_pressure=reading(211e5, "Pa"),
+            transition_angle=reading(0.20944, "rad"),
+        ),
         fluid=Fluid(fluid_class=FluidClass.MINERAL, iso_vg=46, temperature=reading(323.15, "K")),
     )

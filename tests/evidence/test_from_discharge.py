@@ -28,7 +28,12 @@ def check(small_case):
 
 def test_one_item_for_each_node(small_case, check):
     items = by_node(small_case, check)
-    assert set(items) == {Node.HOT_BUBBLES, Node.FUEL_PATH, Node.FAST_PRESSURE_RISE, Node.OVERPRESSURE}
+    assert set(items) == {
+        Node.HOT_BUBBLES,
+        Node.FUEL_PATH,
+        Node.FAST_PRESSURE_RISE,
+        Node.OVERPRESSURE,
+    }
     assert len({i.key for i in items.values()}) == 4
     for item in items.values():
         if isinstance(item, EvidenceItem):

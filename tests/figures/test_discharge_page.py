@@ -32,7 +32,8 @@ def test_every_figure_named_in_a_panel_is_drawn(small_case, check):
 
 def test_figures_repeat_byte_for_byte(small_case, check):
     one, two = (
-        {k: svg_bytes(f) for k, f in figures_discharge(small_case, check).items()} for _ in range(2)
+        {k: svg_bytes(f) for k, f in figures_discharge(small_case, check).items()}
+        for _ in range(2)
     )
     assert one == two
 

@@ -79,8 +79,12 @@ def test_a_tenth_of_a_millimetre_in_a_millisecond():
     assert peaks.wall[0] == pytest.approx(325.5, abs=0.01 * 932)
 
 
-@pytest.mark.outside_value(source=INDEPENDENT + "; cosine and exponential-like ramps matter below Pe 3")
-@pytest.mark.parametrize(("number", "core"), [(0.1, 355), (0.3, 427), (1, 603), (3, 878), (10, 1182)])
+@pytest.mark.outside_value(
+    source=INDEPENDENT + "; cosine and exponential-like ramps matter below Pe 3"
+)
+@pytest.mark.parametrize(
+    ("number", "core"), [(0.1, 355), (0.3, 427), (1, 603), (3, 878), (10, 1182)]
+)
 def test_cosine_ramp(number, core):
     t = np.linspace(0, RISE, 201)
     p = P1 + 0.5 * (P2 - P1) * (1 - np.cos(np.pi * t / RISE))
@@ -88,7 +92,9 @@ def test_cosine_ramp(number, core):
     assert history.peaks.core[0] == pytest.approx(core, abs=0.02 * 932)
 
 
-@pytest.mark.outside_value(source="isentropic ideal gas, NASA TM-4513: large Peclet number is adiabatic")
+@pytest.mark.outside_value(
+    source="isentropic ideal gas, NASA TM-4513: large Peclet number is adiabatic"
+)
 def test_adiabatic_limit():
     peaks = at_peclet(1e5).peaks
     ideal = float(adiabatic_end_temperature(T0, P1, P2))
@@ -96,7 +102,9 @@ def test_adiabatic_limit():
     assert peaks.mean[0] == pytest.approx(ideal, rel=0.015)
 
 
-@pytest.mark.outside_value(source="isothermal limit: slow compression stays at the wall's temperature, R ~ p^(-1/3)")
+@pytest.mark.outside_value(
+    source="isothermal limit: slow compression stays at the wall's temperature, R ~ p^(-1/3)"
+)
 def test_isothermal_limit():
     history = at_peclet(1e-5)
     assert history.peaks.core[0] - T0 < 5.0
@@ -104,7 +112,9 @@ def test_isothermal_limit():
     assert final == pytest.approx((P1 / P2) ** (1 / 3), rel=1e-3)
 
 
-@pytest.mark.outside_value(source="Rayleigh, Phil. Mag. 34 (1917): U^2 = (2 dp/3 rho)(R0^3/R^3 - 1), closing in 0.91468 R0 sqrt(rho/dp)")
+@pytest.mark.outside_value(
+    source="Rayleigh, Phil. Mag. 34 (1917): U^2 = (2 dp/3 rho)(R0^3/R^3 - 1), closing in 0.91468 R0 sqrt(rho/dp)"
+)
 @pytest.mark.parametrize("radius", [1e-4, 1e-3])
 @pytest.mark.parametrize("part", [0.7, 0.4, 0.2])
 def test_rayleigh_collapse(radius, part):
@@ -125,7 +135,9 @@ def test_rayleigh_collapse(radius, part):
         assert time / scale + rest == pytest.approx(RAYLEIGH_FACTOR, rel=1e-3)
 
 
-@pytest.mark.outside_value(source="Prosperetti, J. Acoust. Soc. Am. 61 (1977) 17-27, polytropic exponent of small oscillations")
+@pytest.mark.outside_value(
+    source="Prosperetti, J. Acoust. Soc. Am. 61 (1977) 17-27, polytropic exponent of small oscillations"
+)
 @pytest.mark.parametrize("chi", [1.0, 0.1, 0.03, 0.01])
 def test_small_amplitude_exponent(chi):
     from rca.physics.thermal_regime import air_diffusivity
@@ -144,10 +156,14 @@ def test_small_amplitude_exponent(chi):
     s, c, mean = np.linalg.lstsq(basis, r, rcond=None)[0]
     phi = -1e-3 / ((s + 1j * c) / mean)  # p' = -Phi R'/R, phase of p taken as zero
     # the gas's own exponent: heat capacity ratio of air at T0 is 1.3996
-    assert phi.real / 3 == pytest.approx(float(small_amplitude_exponent(chi, gamma=1.3995)), abs=4e-3)
+    assert phi.real / 3 == pytest.approx(
+        float(small_amplitude_exponent(chi, gamma=1.3995)), abs=4e-3
+    )
 
 
-@pytest.mark.outside_value(source="Minnaert, Phil. Mag. 16 (1933) 235: adiabatic breathing frequency sqrt(3 gamma p/rho)/R")
+@pytest.mark.outside_value(
+    source="Minnaert, Phil. Mag. 16 (1933) 235: adiabatic breathing frequency sqrt(3 gamma p/rho)/R"
+)
 def test_breathing_frequency():
     radius, rho = 2e-3, 860.0
     omega = np.sqrt(3 * 1.3995 * P1 / rho) / radius
@@ -164,14 +180,18 @@ def test_breathing_frequency():
     assert np.mean(np.diff(up)) == pytest.approx(period, rel=0.02)
 
 
-@pytest.mark.outside_value(source="Keller-Miksis with a polytropic gas (kappa 1.366, mu 0.03 Pa s, 860 kg/m3), independent computation; same gas without conduction differs by a few per cent")
+@pytest.mark.outside_value(
+    source="Keller-Miksis with a polytropic gas (kappa 1.366, mu 0.03 Pa s, 860 kg/m3), independent computation; same gas without conduction differs by a few per cent"
+)
 @pytest.mark.parametrize(("mm", "ms", "ratio"), [(0.5, 0.1, 4.97), (0.5, 0.3, 1.10), (1.0, 0.3, 2.87), (1.0, 1.0, 1.00), (2.0, 1.0, 1.39), (0.1, 0.1, 1.00)])  # fmt: skip
 def test_inertial_overshoot(mm, ms, ratio):
     peaks = ramp(mm * 1e-3, rise=ms * 1e-3, inertial=True).peaks
     assert peaks.pressure[0] / P2 == pytest.approx(ratio, rel=0.05)
 
 
-@pytest.mark.outside_value(source="independent computation: Livengood-Wu on the conduction model's core, n-dodecane phi = 1, critical radius in um")
+@pytest.mark.outside_value(
+    source="independent computation: Livengood-Wu on the conduction model's core, n-dodecane phi = 1, critical radius in um"
+)
 @pytest.mark.parametrize(("p1", "celsius", "p2", "ms", "microns"), [
     (1.0, 50, 172, 0.1, 100), (1.0, 50, 172, 1.0, 228), (1.0, 50, 172, 10.0, 574),
     (1.0, 50, 100, 1.0, 285), (1.0, 50, 350, 0.3, 109), (0.6, 60, 172, 1.0, 256),
@@ -205,7 +225,7 @@ def _solved_by_scipy(radius, grid, *, inertial):
 
     def rate(t, state):
         dy, side = np.empty(n_all + 2), np.empty(6)
-        bubble_cells.evaluate(inertial, n_gas, n_all, state, P1 + slope * t, slope, par, mass, oil, gas_table(), np.empty(n_all), np.empty(n_all), dy, side)  # fmt: skip
+        bubble_cells.evaluate(inertial, n_gas, n_all, state, P1 + slope * t, slope, par, mass, oil, gas_table(), np.empty(n_all), np.empty(n_all), np.zeros((3, n_all)), dy, side)  # fmt: skip
         return dy
 
     return solve_ivp(rate, (0, RISE), y, method="BDF", rtol=1e-7, atol=1e-9)
@@ -218,7 +238,14 @@ def test_integrator_against_scipy(inertial):
     other = _solved_by_scipy(radius, grid, inertial=inertial)
     assert other.success
     ours = bubble_history(
-        radius, T0, [0, RISE], [P1, P2], grid=grid, inertial=inertial, tolerance=1e-5, ramp_end=RISE
+        radius,
+        T0,
+        [0, RISE],
+        [P1, P2],
+        grid=grid,
+        inertial=inertial,
+        tolerance=1e-5,
+        ramp_end=RISE,
     )
     assert ours.core[-1] == pytest.approx(other.y[2, -1], abs=0.3)
     assert ours.peaks.core[0] == pytest.approx(other.y[2].max(), abs=0.5)
@@ -226,7 +253,9 @@ def test_integrator_against_scipy(inertial):
         assert ours.radius[-1] == pytest.approx(other.y[0, -1], rel=2e-4)
 
 
-@pytest.mark.outside_value(source="first law over the closed bubble, exact: p V = m R T_mean at every instant")
+@pytest.mark.outside_value(
+    source="first law over the closed bubble, exact: p V = m R T_mean at every instant"
+)
 def test_gas_mass_is_kept():
     for history in (ramp(1e-4), ramp(5e-4, rise=1e-4, inertial=True)):
         mass = history.pressure * history.radius**3 / history.mean
@@ -319,7 +348,9 @@ def test_inertia_is_switched_on_by_the_collapse_time():
 
 def test_solver_failure_names_the_state():
     with pytest.raises(SolverError, match=r"gas passed 6000 K.*radius 0.003 m"):
-        bubble_history(3e-3, 900.0, [0, 1e-6, 1e-3], [2e4, 900e5, 900e5], inertial=True, oil=MOBILE)
+        bubble_history(
+            3e-3, 900.0, [0, 1e-6, 1e-3], [2e4, 900e5, 900e5], inertial=True, oil=MOBILE
+        )
 
 
 @pytest.mark.parametrize("bad", [

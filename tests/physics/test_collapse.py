@@ -27,7 +27,9 @@ def test_rayleigh_factor():
     assert pytest.approx(exact, rel=2e-6) == RAYLEIGH_FACTOR
 
 
-@pytest.mark.outside_value(source="Blake 1949; Brennen 1995 ch. 2: at 2 sigma/R = 0.6 p0 the values are exact by hand")
+@pytest.mark.outside_value(
+    source="Blake 1949; Brennen 1995 ch. 2: at 2 sigma/R = 0.6 p0 the values are exact by hand"
+)
 def test_blake():
     pressure, radius = blake_threshold(1e-6, surface_tension=0.03, pressure=1e5)
     # 2 sigma/R = 6e4 Pa, p_g = 1.6e5 Pa: p = -(2/3) 6e4 sqrt(6e4/4.8e5) = -14142 Pa = -1e5 sqrt(2)/10
@@ -35,7 +37,9 @@ def test_blake():
     assert radius == pytest.approx(2.828e-6, rel=1e-3)
 
 
-@pytest.mark.outside_value(source="static equilibrium at the critical radius is an extremum of the liquid pressure (identity)")
+@pytest.mark.outside_value(
+    source="static equilibrium at the critical radius is an extremum of the liquid pressure (identity)"
+)
 def test_blake_is_the_minimum_of_the_equilibrium_curve():
     r0, sigma, p0 = 5e-6, 0.03, 1e5
     gas = p0 + 2 * sigma / r0

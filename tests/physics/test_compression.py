@@ -19,7 +19,9 @@ from rca.physics.compression import (
 
 ATM170 = 170 * 101325.0
 KGF = 98066.5  # [Pa] kgf/cm2
-AIR_TABLE = "Moran and Shapiro, Fundamentals of Engineering Thermodynamics, Table A-22 (from memory)"
+AIR_TABLE = (
+    "Moran and Shapiro, Fundamentals of Engineering Thermodynamics, Table A-22 (from memory)"
+)
 CANTERA = "Cantera 3.2, nasa_gas.yaml thermodynamic data, ideal gas"
 
 
@@ -41,7 +43,9 @@ def test_relative_pressure_of_the_air_table(t, relative_pressure):
 @pytest.mark.outside_value(source=AIR_TABLE)
 @pytest.mark.parametrize(("t", "energy", "enthalpy"), [(600, 220.7, 306.8), (1000, 544.9, 745.9), (1200, 719.3, 977.6)])  # fmt: skip
 def test_energy_and_enthalpy_of_the_air_table(t, energy, enthalpy):
-    assert (air_internal_energy(t) - air_internal_energy(300.0)) / 1e3 == pytest.approx(energy, abs=0.6)
+    assert (air_internal_energy(t) - air_internal_energy(300.0)) / 1e3 == pytest.approx(
+        energy, abs=0.6
+    )
     assert (air_enthalpy(t) - air_enthalpy(300.0)) / 1e3 == pytest.approx(enthalpy, abs=0.9)
 
 
@@ -53,7 +57,9 @@ def test_heat_capacity_enthalpy_entropy_against_cantera(t):
     h0, s0 = gas.enthalpy_mass, gas.entropy_mass
     gas.TP = t, 1e5
     assert air_heat_capacity(t) == pytest.approx(gas.cp_mass, rel=2e-4)
-    assert air_enthalpy(t) - air_enthalpy(300.0) == pytest.approx(gas.enthalpy_mass - h0, rel=2e-4, abs=20)
+    assert air_enthalpy(t) - air_enthalpy(300.0) == pytest.approx(
+        gas.enthalpy_mass - h0, rel=2e-4, abs=20
+    )
     r = gas.cp_mass - gas.cv_mass
     assert (reduced_entropy(t) - reduced_entropy(300.0)) == pytest.approx((gas.entropy_mass - s0) / r, rel=2e-4, abs=1e-4)  # fmt: skip
 
@@ -67,7 +73,9 @@ def test_end_temperature_is_cantera_s_isentrope(p1, celsius):
     assert adiabatic_end_temperature(celsius + 273.15, p1, ATM170) == pytest.approx(gas.T, abs=0.3)
 
 
-@pytest.mark.outside_value(source="Lemmon et al., J. Phys. Chem. Ref. Data 29 (2000) 331, air equation of state as in CoolProp")
+@pytest.mark.outside_value(
+    source="Lemmon et al., J. Phys. Chem. Ref. Data 29 (2000) 331, air equation of state as in CoolProp"
+)
 def test_real_gas_is_three_kelvin_hotter():
     props = pytest.importorskip("CoolProp.CoolProp").PropsSI
     entropy = props("S", "T", 313.15, "P", 1e5, "Air")
@@ -77,19 +85,27 @@ def test_real_gas_is_three_kelvin_hotter():
     assert ours == pytest.approx(real, abs=4.0)
 
 
-@pytest.mark.outside_value(source="Cantera 3.2 with its air.yaml (other nitrogen polynomials), isentrope to 170 atm")
+@pytest.mark.outside_value(
+    source="Cantera 3.2 with its air.yaml (other nitrogen polynomials), isentrope to 170 atm"
+)
 @pytest.mark.parametrize(("p1", "celsius", "kelvin"), [(1.0e5, 40, 1245.3), (0.8e5, 50, 1349.8), (0.6e5, 50, 1446.1)])  # fmt: skip
 def test_hundred_and_seventy_atmospheres(p1, celsius, kelvin):
-    assert adiabatic_end_temperature(celsius + 273.15, p1, ATM170) == pytest.approx(kelvin, abs=2.0)
+    assert adiabatic_end_temperature(celsius + 273.15, p1, ATM170) == pytest.approx(
+        kelvin, abs=2.0
+    )
 
 
-@pytest.mark.outside_value(source="perfect-gas isentropic relation against Cantera's variable heat capacity")
+@pytest.mark.outside_value(
+    source="perfect-gas isentropic relation against Cantera's variable heat capacity"
+)
 def test_constant_gamma_overshoots_by_118_kelvin():
     trap = constant_gamma_end_temperature(313.15, 1e5, ATM170)
     assert trap - adiabatic_end_temperature(313.15, 1e5, ATM170) == pytest.approx(118.0, abs=2.0)
 
 
-@pytest.mark.outside_value(source="Lohrentz, Oelhydraulik und Pneumatik 18 (1974) 175-180, table as reproduced in trade texts (from memory)")
+@pytest.mark.outside_value(
+    source="Lohrentz, Oelhydraulik und Pneumatik 18 (1974) 175-180, table as reproduced in trade texts (from memory)"
+)
 @pytest.mark.parametrize(("kgf", "celsius"), [(70, 766), (140, 994), (210, 1145)])
 def test_the_trade_s_table_is_constant_gamma_arithmetic(kgf, celsius):
     trap = float(constant_gamma_end_temperature(311.15, 101325.0, kgf * KGF)) - 273.15
@@ -119,7 +135,7 @@ def test_more_compression_and_warmer_start_are_hotter(t, ratio, more):
     assert adiabatic_end_temperature(t + 1, 1e5, ratio * 1e5) > end
 
 
-@pytest.mark.parametrize("bad", [dict(t_start=float("nan")), dict(p_start=-0.2e5), dict(p_end=0.5e5), dict(p_end=float("inf")), dict(t_start=100.0), dict(p_end=1e20)])  # fmt: skip
+@pytest.mark.parametrize("bad", [{"t_start": float("nan")}, {"p_start": -0.2e5}, {"p_end": 0.5e5}, {"p_end": float("inf")}, {"t_start": 100.0}, {"p_end": 1e20}])  # fmt: skip
 def test_refuses_what_it_cannot_take(bad):
     with pytest.raises(OutOfRangeError):
         adiabatic_end_temperature(**{"t_start": 313.0, "p_start": 1e5, "p_end": 2e7, **bad})

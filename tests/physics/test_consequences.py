@@ -12,7 +12,9 @@ STATE = {
 }  # fmt: skip
 
 
-@pytest.mark.outside_value(source="ideal gas, Cantera 3.2 internal energy (8.3 J) and combustion of n-dodecane limited by oxygen (31.9 J), per litre")
+@pytest.mark.outside_value(
+    source="ideal gas, Cantera 3.2 internal energy (8.3 J) and combustion of n-dodecane limited by oxygen (31.9 J), per litre"
+)
 def test_energy_per_litre():
     budget = energy_budget(**STATE)
     assert budget.combustion_heat / 1e3 == pytest.approx(31.9, rel=0.02)
@@ -29,10 +31,12 @@ def test_throttling_dwarfs_it():
     assert budget.throttling_rise / budget.combustion_rise > 300
 
 
-@pytest.mark.outside_value(source="stoichiometry C12H26 + 18.5 O2 in air by hand: 1 kg of fuel to 15.0 kg of air")
+@pytest.mark.outside_value(
+    source="stoichiometry C12H26 + 18.5 O2 in air by hand: 1 kg of fuel to 15.0 kg of air"
+)
 def test_stoichiometry():
-    assert 1 / FUEL_PER_AIR == pytest.approx(15.0, rel=0.005)
-    assert HEAT_PER_AIR / 1e6 == pytest.approx(2.957, rel=0.01)
+    assert pytest.approx(15.0, rel=0.005) == 1 / FUEL_PER_AIR
+    assert pytest.approx(2.957, rel=0.01) == HEAT_PER_AIR / 1e6
 
 
 @pytest.mark.outside_value(source="Arrhenius identity E = R ln2 T (T + 10)/10 by hand")

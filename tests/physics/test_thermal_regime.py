@@ -27,7 +27,9 @@ def test_conductivity_against_coolprop(t):
     assert dilute_air_conductivity(np.array(t)) == air_conductivity(t)
 
 
-@pytest.mark.outside_value(source="Incropera and DeWitt, Fundamentals of Heat and Mass Transfer, Table A.4 (from memory)")
+@pytest.mark.outside_value(
+    source="Incropera and DeWitt, Fundamentals of Heat and Mass Transfer, Table A.4 (from memory)"
+)
 @pytest.mark.parametrize(("t", "k"), [(300.0, 26.3e-3), (500.0, 40.7e-3), (1000.0, 66.7e-3)])
 def test_conductivity_of_the_handbook(t, k):
     assert air_conductivity(t) == pytest.approx(k, rel=0.03)
@@ -39,15 +41,21 @@ def test_diffusivity(t, p, alpha):
     assert air_diffusivity(t, p) == pytest.approx(alpha, rel=0.01)
 
 
-@pytest.mark.outside_value(source="arithmetic on the definition with alpha 2.44e-5 m2/s: R0 = sqrt(Pe alpha t_r)")
-@pytest.mark.parametrize(("number", "microns"), [(0.1, 49.4), (2.0, 221), (10.0, 494), (30.0, 855)])
+@pytest.mark.outside_value(
+    source="arithmetic on the definition with alpha 2.44e-5 m2/s: R0 = sqrt(Pe alpha t_r)"
+)
+@pytest.mark.parametrize(
+    ("number", "microns"), [(0.1, 49.4), (2.0, 221), (10.0, 494), (30.0, 855)]
+)
 def test_radius_at_a_peclet_number(number, microns):
     radius = radius_at_peclet(number, 1e-3, 313.15, 1e5)
     assert radius * 1e6 == pytest.approx(microns, rel=0.005)
     assert peclet(radius, 1e-3, 313.15, 1e5) == pytest.approx(number)
 
 
-@pytest.mark.outside_value(source="Prosperetti, J. Acoust. Soc. Am. 61 (1977) 17-27: limits 1 and gamma; chi = 0.1 evaluated by hand")
+@pytest.mark.outside_value(
+    source="Prosperetti, J. Acoust. Soc. Am. 61 (1977) 17-27: limits 1 and gamma; chi = 0.1 evaluated by hand"
+)
 @pytest.mark.parametrize(("chi", "kappa"), [(1e3, 1.0), (10, 1.0), (1, 1.0014), (0.1, 1.0867), (0.01, 1.285), (1e-4, 1.388)])  # fmt: skip
 def test_small_amplitude_exponent(chi, kappa):
     assert small_amplitude_exponent(chi) == pytest.approx(kappa, abs=1e-3)
@@ -58,7 +66,9 @@ def test_small_amplitude_exponent_goes_to_gamma():
     assert small_amplitude_exponent(1e-9) == pytest.approx(1.4, abs=1e-3)
 
 
-@pytest.mark.outside_value(source="Carslaw and Jaeger: two half-spaces in contact; effusivities 66 and 467 W s^0.5/(m2 K) by hand")
+@pytest.mark.outside_value(
+    source="Carslaw and Jaeger: two half-spaces in contact; effusivities 66 and 467 W s^0.5/(m2 K) by hand"
+)
 def test_contact_temperature():
     found = contact_temperature(1245.0, 313.15, gas_effusivity=66.0, liquid_effusivity=467.0)
     assert found == pytest.approx(428.5, abs=1.0)
@@ -84,7 +94,9 @@ def test_refusals(call):
         call()
 
 
-@pytest.mark.outside_value(source="independent computation of the conduction model by another program, shares of the adiabatic rise")
+@pytest.mark.outside_value(
+    source="independent computation of the conduction model by another program, shares of the adiabatic rise"
+)
 @pytest.mark.parametrize(("number", "core", "mean"), [(0.1, 0.112, 0.047), (1, 0.371, 0.162), (3, 0.582, 0.262), (10, 0.897, 0.419), (30, 1.0, 0.603), (100, 1.0, 0.760), (1000, 1.0, 0.918), (1e4, 1.0, 0.974)])  # fmt: skip
 def test_shares_of_the_adiabatic_rise(number, core, mean):
     assert core_fraction(number) == pytest.approx(core, abs=0.02)
