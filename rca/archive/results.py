@@ -42,7 +42,7 @@ def assemble(case: Case, store: Store, *, record: Mapping[str, Any]) -> dict[str
         "causes": verdict["causes"],
         "evidence": verdict["evidence"],
         "not_assessed": [to_plain(n) for s in stages.values() for n in s.not_assessed],
-        "checks": {name: stages[name].check for name in stages if name in CHECKS},
+        "checks": {name: stages[name].check or {} for name in stages if name in CHECKS},
         "other_checks": {
             name: stage.check
             for name, stage in stages.items()

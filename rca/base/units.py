@@ -5,6 +5,7 @@ Units are Pint's, in a registry of our own in which a turn is a plain count: 148
 "0.85 bar(a)", or gauge, as in "210 bar(g)"; a pressure difference needs neither.
 """
 
+import math
 import re
 from dataclasses import dataclass
 from functools import cache
@@ -75,6 +76,7 @@ _QUANTITY = re.compile(
     rf"(?P<value>{_NUMBER})\s*(?P<unit>[^\d\s+±][^+±]*?)?\s*"
     rf"(?:(?:\+/-|±)\s*(?P<u>{_NUMBER})\s*(?P<u_unit>.*?)\s*)?"
 )
+_UNIT = re.compile(r"[A-Za-z\u00b0\u00b5\u03bc%\u00b2\u00b30-9_/*^.\u00b7 ()-]*")
 _REFERENCE = re.compile(r"\s*\((?P<which>a|g|abs|gauge)\)\s*$")
 
 
@@ -139,6 +141,8 @@ def parse_quantity(
     if match is None:
         raise UnitError(repr(text), f"a number with a unit, such as {example!r}", "Write both.")
     value, unit = float(match["value"]), (match["unit"] or "").strip()
+    if not math.isfinite(value):
+        raise UnitError(repr(text), "a finite number with a unit", "Check the exponent.")
     if not unit and dimension != "ratio":
         raise UnitError(
             f"{text!r} without a unit",
@@ -161,6 +165,12 @@ def unit_scale(unit: str, dimension: str) -> Scale:
     (a) or (g).
     """
     bare, reference = _split_reference(unit)
+    if not _UNIT.fullmatch(bare):
+        raise UnitError(
+            f"the unit {unit!r}",
+            f"a unit of {dimension}",
+            f"Write for example {EXAMPLES.get(dimension, '')!r}.",
+        )
     if dimension == "pressure" and reference is None:
         raise UnitError(
             f"the pressure unit {unit!r}, which is neither absolute nor gauge",
