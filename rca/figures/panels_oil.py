@@ -19,7 +19,7 @@ def panels_oil(case: Case, check: OilCheck | None) -> Section:
     """The panels of the oil section; one panel that says so where there is no usable sample."""
     if check is None:
         return Section(stage="oil", title=TITLE, panels=(_nothing(case),))
-    panels = [_latest(check), _trends(check)]
+    panels = [_latest(check), _combinations(check), _trends(check)]
     if check.excluded or check.unread or check.undated or check.other_points:
         panels.append(_left_out(check))
     panels.append(_precision(check))
@@ -57,7 +57,7 @@ def _latest(check: OilCheck) -> Panel:
         question="Does the oil differ from new oil by more than the tests scatter?",
         answer=answer,
         status="beyond" if beyond else "within",
-        paragraphs=tuple(p for p in (_timing(check), _darkening(check), ROUTINE_NOTE) if p),
+        paragraphs=tuple(p for p in (_timing(check), _darkening(check)) if p),
         tables=(
             Table(
                 name="oil-latest",
@@ -194,6 +194,49 @@ def _darkening(check: OilCheck) -> str:
     if dark.gradual:
         return f"{change} It came gradually over {dark.points} samples."
     return change
+
+
+def _combinations(check: OilCheck) -> Panel:
+    most = [p for p in check.pictures if len(p.fits) >= 2 and len(p.fits) > len(p.does_not_fit)]
+    named = "; ".join(
+        f"{p.name} ({len(p.fits)} of {len(p.fits) + len(p.does_not_fit)} tested signs)"
+        for p in most
+    )
+    answer = (
+        f"More signs shown than not: {named}."
+        if named
+        else "No picture has two signs shown and fewer not shown."
+    )
+    return Panel(
+        key="oil.combinations",
+        title="Which results go together",
+        question="Which pictures do the results fit, and what would part them?",
+        answer=answer,
+        status="described",
+        tables=(
+            Table(
+                name="oil-combinations",
+                title="Signs by picture",
+                columns=tuple(
+                    Column(title=t) for t in ("Picture", "Fits", "Not shown", "Not tested")
+                ),
+                rows=tuple(
+                    (
+                        p.name,
+                        ", ".join(p.fits) or "–",
+                        ", ".join(p.does_not_fit) or "–",
+                        ", ".join(p.not_tested) or "–",
+                    )
+                    for p in check.pictures
+                ),
+                note=(
+                    "A sign not shown is no proof of absence; the weighing is done with all "
+                    "other evidence, not here."
+                ),
+            ),
+        ),
+        paragraphs=(ROUTINE_NOTE,),
+    )
 
 
 def _trends(check: OilCheck) -> Panel:

@@ -42,6 +42,7 @@ def read_oil_reports(folder: Path, case: Case) -> OilReading:
     for report in case.oil_reports:
         if Path(report.file).suffix.lower() == ".pdf":
             kept.problems.append(_pdf(report))
+            kept.unread.append(_whole_file(report, hashes, "a PDF, kept as an exhibit"))
             continue
         try:
             table = read_table(folder / report.file, report.file, sheet=report.sheet)
@@ -51,6 +52,7 @@ def read_oil_reports(folder: Path, case: Case) -> OilReading:
         layout = layout_of(table.rows, report.columns)
         if layout is None:
             kept.problems.append(_no_heading(report))
+            kept.unread.append(_whole_file(report, hashes, "no heading this program can read"))
             continue
         texts = [c.text for row in layout.body for c in row if c.typed != "number"]
         reader = SampleReader(
@@ -221,6 +223,11 @@ def _twice(sample: OilSample, severity: Severity, found: str, expected: str) -> 
     )
 
 
+def _whole_file(report: OilReportFile, hashes: dict[str, str], reason: str) -> UnreadCell:
+    source = Source(file=report.file, locator="whole file", sha256=hashes.get(report.file, ""))
+    return UnreadCell(source=source, text=report.file, reason=reason)
+
+
 def _pdf(report: OilReportFile) -> Problem:
     return Problem(
         severity=Severity.WARNING,
@@ -234,7 +241,7 @@ def _pdf(report: OilReportFile) -> Problem:
 
 def _no_heading(report: OilReportFile) -> Problem:
     return Problem(
-        severity=Severity.ERROR,
+        severity=Severity.WARNING,
         file=report.file,
         place="",
         found="no heading this program can read",

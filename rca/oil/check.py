@@ -7,6 +7,7 @@ from datetime import date
 
 from rca.case.model import Case
 from rca.case.oil import OilSample, OilValue, UnreadCell
+from rca.oil.combinations import Picture, pictures_of
 from rca.oil.darkening import Darkening, darkening_of
 from rca.oil.fills import OilEvent, OilLife, oil_life
 from rca.oil.judge import Judged, judge
@@ -52,6 +53,7 @@ class OilCheck:
     events: tuple[OilEvent, ...]
     judged: dict[str, Judged]
     darkening: Darkening | None
+    pictures: tuple[Picture, ...]  # combinations of results
     trends: tuple[Trend, ...]  # of every fill
     points: tuple[Point, ...]
     fluid_class: str  # "" where case.toml does not say
@@ -82,6 +84,7 @@ def check_oil(
     fluid = case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
     trends = _trends(case, rows, reference, life, used)
     judged = _judged(case, rows, reference, limits, fluid, trends, usable)
+    dark = _darkening(case, rows, reference, life)
     last = used[-1]
     failed = case.header.occurred.date() if case.header.occurred is not None else None
     before = [s for s, p in zip(used, life.places, strict=True) if p.fill == life.places[-1].fill]
@@ -102,7 +105,8 @@ def check_oil(
         laboratory_changes=life.days("laboratory change"),
         events=life.events,
         judged=judged,
-        darkening=_darkening(case, rows, reference, life),
+        darkening=dark,
+        pictures=pictures_of(judged, dark),
         trends=trends,
         points=_points(dated, point, life, used),
         fluid_class=fluid or "",

@@ -60,7 +60,7 @@ class Trend:
     noise: float = 0.0  # R at the middle level
     first_x: float = 0.0  # [h], where the line begins
     first_y: float | None = None  # on the line
-    laboratories: int = 1
+    laboratories: int = 1  # or methods; pairs are compared inside one only
     laboratory_step: float | None = None  # median residual after minus before the change
     corrected: bool = False  # for top-ups
     outliers: tuple[str, ...] = ()  # sample ids, flagged and kept
@@ -101,11 +101,18 @@ def trend_of(
     )
     if len(rows) < LEAST:
         return base
-    groups = [row.place.stretch for row in rows]
+    groups = _stretches(rows)
     try:
         return _tested(base, x, corrected or values, ops, groups, rows)
     except OutOfRangeError:
         return replace(base, verdict="not testable")
+
+
+def _stretches(rows: Sequence[Row]) -> list[int]:
+    """A number for each stretch of one laboratory and one method."""
+    kinds = [(row.place.stretch, row.value.method) for row in rows]
+    names = list(dict.fromkeys(kinds))
+    return [names.index(kind) for kind in kinds]
 
 
 def _tested(
