@@ -12,6 +12,7 @@ from rca.case.model import Case
 from rca.figures.style import DISCHARGE, GREY, INK, PALE, SUCTION, new_figure, rc
 from rca.oil.check import OilCheck, Point
 from rca.oil.judge import Judged
+from rca.oil.trends import Trend
 from rca.oil.words import property_label
 
 ORDER = (
@@ -40,6 +41,8 @@ _WEAR = {"Fe", "Cu", "Pb", "Cr", "Sn", "Al", "Si", "ferrous_index", "cleanliness
     f"particles_{size}" for size in (4, 6, 14)
 }
 MOST = 8
+EVENT = "event"  # the words at events stand in the top row only
+FAR = 1.5  # a limit farther than this many spans of the results is named, not drawn
 
 
 def figures_oil(case: Case, check: OilCheck | None) -> dict[str, Figure]:
@@ -71,8 +74,13 @@ def trend_figure(check: OilCheck, properties: Sequence[str]) -> Figure:
     rows = (len(properties) + 1) // 2
     with mpl.rc_context(rc()):  # type: ignore[arg-type]
         figure, axes = new_figure(height_in=0.45 + 1.35 * rows, rows=rows, columns=2)
-        for axis, name in zip(axes, properties, strict=False):
+        for place, (axis, name) in enumerate(zip(axes, properties, strict=False)):
             _draw(axis, check, name)
+            if place >= 2:
+                for text in [t for t in axis.texts if t.get_gid() == EVENT]:
+                    text.remove()
+            if place < len(properties) - 2:
+                axis.set_xlabel("")
         for axis in axes[len(properties) :]:
             axis.set_axis_off()
     return figure
@@ -88,16 +96,24 @@ def _draw(axes: Axes, check: OilCheck, name: str) -> None:
         _reference_band(axes, judged)
     for fill in sorted({p.fill for p in points}):
         line = [p for p in points if p.fill == fill and not p.excluded and p.op in ("=", "~")]
-        axes.plot([_x(p, on_hours=on_hours) for p in line], [p.value for p in line], color=PALE)
+        axes.plot(
+            [_x(p, on_hours=on_hours) for p in line],
+            [p.value for p in line],
+            color=GREY,
+            linewidth=0.6,
+        )
     for laboratory, marker in zip(
         dict.fromkeys(p.laboratory for p in points), "osD^v", strict=False
     ):
         _markers(
             axes, [p for p in points if p.laboratory == laboratory], marker, on_hours=on_hours
         )
+    for trend in check.trends:
+        if trend.property == name and trend.laboratories == 1 and not trend.corrected:
+            _trend_line(axes, trend, points, on_hours=on_hours)
     _events(axes, check, on_hours=on_hours)
-    _limits(axes, judged)
     axes.margins(x=0.04, y=0.18)
+    _limits(axes, judged)
     axes.set_xlabel("machine hours [h]" if on_hours else "date of sampling")
     axes.tick_params(axis="x", rotation=0)
     axes.locator_params(axis="y", nbins=4)
@@ -108,6 +124,18 @@ def _draw(axes: Axes, check: OilCheck, name: str) -> None:
         axes.xaxis.set_major_locator(locator)
         formatter = dates.DateFormatter("%b %y")  # type: ignore[no-untyped-call]
         axes.xaxis.set_major_formatter(formatter)
+
+
+def _trend_line(axes: Axes, trend: Trend, points: Sequence[Point], *, on_hours: bool) -> None:
+    """The line of a trend that is shown, over its own fill."""
+    own = [p for p in points if p.fill == trend.fill and not p.excluded]
+    known = trend.per_1000h is not None and trend.first_y is not None
+    if trend.verdict not in ("rises", "falls") or not known or len(own) < 2 or not on_hours:
+        return
+    first, last = _x(own[0], on_hours=on_hours), _x(own[-1], on_hours=on_hours)
+    start = trend.first_y or 0.0
+    end = start + (trend.per_1000h or 0.0) * trend.span / 1000.0
+    axes.plot([first, last], [start, end], color=DISCHARGE, linewidth=1.0, dashes=(5, 1.5))
 
 
 def _markers(axes: Axes, points: Sequence[Point], marker: str, *, on_hours: bool) -> None:
@@ -133,7 +161,7 @@ def _reference_band(axes: Axes, judged: Judged) -> None:
     axes.axhline(judged.new, color=GREY, linewidth=0.6)
     axes.annotate(
         "new ± R",
-        (0.0, judged.new),
+        (0.0, judged.new - judged.noise),
         xycoords=("axes fraction", "data"),
         xytext=(2, 1),
         textcoords="offset points",
@@ -163,6 +191,7 @@ def _events(axes: Axes, check: OilCheck, *, on_hours: bool) -> None:
                 va="top",
                 fontsize=6.5,
                 color=GREY,
+                gid=EVENT,
             )
 
 
@@ -178,15 +207,36 @@ def _event_x(check: OilCheck, day: date) -> float | None:
 
 
 def _limits(axes: Axes, judged: Judged | None) -> None:
+    """Limits near the results as lines; those far off as words in the corner."""
+    far = []
     for value, name in judged.limit_lines if judged is not None else ():
+        low, high = axes.get_ylim()
+        span = high - low
+        if not low - FAR * span <= value <= high + FAR * span:
+            far.append(name.removesuffix(" from new"))
+            continue
         axes.axhline(value, color=DISCHARGE, linewidth=0.8, linestyle=(0, (4, 2)))
+        above = value <= low + 0.85 * span
         axes.annotate(
-            name,
+            name.removesuffix(" from new"),
             (1.0, value),
             xycoords=("axes fraction", "data"),
-            xytext=(-2, 1),
+            xytext=(-2, 2 if above else -2),
             textcoords="offset points",
             ha="right",
+            va="bottom" if above else "top",
+            fontsize=7,
+            color=DISCHARGE,
+        )
+    if far:
+        axes.annotate(
+            "off scale: " + "; ".join(far),
+            (1.0, 1.0),
+            xycoords="axes fraction",
+            xytext=(-2, -1),
+            textcoords="offset points",
+            ha="right",
+            va="top",
             fontsize=7,
             color=DISCHARGE,
         )

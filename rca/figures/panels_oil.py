@@ -197,7 +197,13 @@ def _darkening(check: OilCheck) -> str:
 
 
 def _combinations(check: OilCheck) -> Panel:
-    most = [p for p in check.pictures if len(p.fits) >= 2 and len(p.fits) > len(p.does_not_fit)]
+    most = [
+        p
+        for p in check.pictures
+        if len(p.fits) >= 2
+        and len(p.fits) > len(p.does_not_fit)
+        and any(not sign.endswith("flat") for sign in p.fits)
+    ]
     named = "; ".join(
         f"{p.name} ({len(p.fits)} of {len(p.fits) + len(p.does_not_fit)} tested signs)"
         for p in most

@@ -85,6 +85,12 @@ def _any(*states: State) -> State:
     return None if all(s is None for s in states) else False
 
 
+def _neither_dark_nor_soot(facts: _Facts) -> State:
+    dark = None if facts.dark is None else facts.dark.change >= DARK
+    found = _any(dark, facts.moved("soot", 1))
+    return None if found is None else not found
+
+
 _Test = Callable[[_Facts], State]
 _PICTURES: tuple[tuple[str, tuple[tuple[str, _Test], ...]], ...] = (
     (
@@ -176,16 +182,10 @@ _PICTURES: tuple[tuple[str, tuple[tuple[str, _Test], ...]], ...] = (
             ("ferrous index up (coarse iron)", lambda f: f.moved("ferrous_index", 1)),
             ("viscosity and acid number flat", lambda f: f.flat("viscosity_40", "acid_number")),
             ("silicon flat", lambda f: f.flat("Si")),
-            ("not darkened, no soot", lambda f: _neither_dark_nor_soot(f)),
+            ("not darkened, no soot", _neither_dark_nor_soot),
         ),
     ),
 )
-
-
-def _neither_dark_nor_soot(facts: _Facts) -> State:
-    dark = None if facts.dark is None else facts.dark.change >= DARK
-    found = _any(dark, facts.moved("soot", 1))
-    return None if found is None else not found
 
 
 def _off(facts: _Facts, name: str) -> State:
