@@ -8,6 +8,7 @@ from rca.base.errors import OutOfRangeError
 from rca.base.source import Origin, Reading
 from rca.case.model import Case
 from rca.discharge.chart import core_map, trace
+from rca.discharge.delay import P_RANGE
 from rca.discharge.fuel import fuel_path
 from rca.discharge.inputs import Inputs, gather, spread
 from rca.discharge.model import DischargeCheck, FuelPath, HighPressure, Population, Status
@@ -91,6 +92,9 @@ def _assemble(
     seed: int,
 ) -> DischargeCheck:
     coarse = sampled[-1]
+    assumed = inputs.assumed
+    if inputs.discharge.value > P_RANGE[1]:
+        assumed = (*assumed, "ignition delay beyond its table's 350 bar, by extrapolation")
     t, p1, p2 = inputs.temperature.value, inputs.inlet.value, inputs.discharge.value
     drawn = coarse.draw
     populations = tuple(s.population for s in sampled)
@@ -100,11 +104,10 @@ def _assemble(
     )
     hot = hot_status(possible, indeterminate)
     fuel = fuel_path(
-        case, flash_point=flash_point, pressure=drawn.discharge, wall=coarse.peaks.wall,
+        case, flash_point=flash_point, pressure=drawn.discharge, wall=coarse.wall,
         unit=drawn.spare,
     )  # fmt: skip
     air = (released_air or 0.0) + (USUAL_CARRIED_AIR if carried_air is None else carried_air)
-    assumed = inputs.assumed
     if carried_air is None:
         assumed = (*assumed, f"carried-in air {USUAL_CARRIED_AIR:.1%} of the oil's volume")
     return DischargeCheck(

@@ -39,6 +39,7 @@ class Population:
     wall: Spread  # peak of the oil surface [K]
     overshoot: Spread  # gas pressure peak over the discharge pressure [-]
     inertial: float  # share of bubbles that overtake the line pressure [-]
+    beyond: float  # share whose collapse passes 6000 K, where the model ends [-]
     possible: float  # share hot for long enough, with the margin [-]
     indeterminate: float  # share within the margin [-]
     excluded: float  # share that loses its heat in time, with the margin [-]

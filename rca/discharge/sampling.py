@@ -53,6 +53,7 @@ class Sampled:
     population: Population
     draw: Draw
     peaks: BubblePeaks
+    wall: Floats  # peak of the oil surface without inertia [K]
 
 
 def unit_points(samples: int, dimensions: int, seed: int) -> Floats:
@@ -89,7 +90,7 @@ def compress(inputs: Inputs, drawn: Draw, *, workers: int = 1) -> BubblePeaks:
     return bubble_batch(
         drawn.radius, drawn.temperature, drawn.inlet, drawn.discharge, drawn.rise, hold=HOLD,
         oil=inputs.oil, conduction_factor=drawn.conduction, delays=delays(),
-        delay_factor=drawn.delay, workers=workers,
+        delay_factor=drawn.delay, keep_beyond=True, workers=workers,
     )  # fmt: skip
 
 
@@ -116,6 +117,7 @@ def sample(
     peaks = compress(inputs, drawn, workers=workers)
     possible = ignites(inputs, drawn, 1.0 / HIGH_MARGIN, workers=workers)
     excluded = ~ignites(inputs, drawn, 1.0 / LOW_MARGIN, workers=workers)
+    wall = quiet_wall(inputs, drawn, peaks)
     number = peclet(drawn.radius, drawn.rise, drawn.temperature, drawn.inlet)
     population = Population(
         origin=origin,
@@ -124,14 +126,31 @@ def sample(
         peclet=spread(number),
         core=spread(peaks.core),
         mean=spread(peaks.mean),
-        wall=spread(peaks.wall),
+        wall=spread(wall),
         overshoot=spread(peaks.pressure / drawn.discharge),
         inertial=float(np.mean(peaks.inertial)),
+        beyond=float(np.mean(peaks.beyond)),
         possible=float(np.mean(possible)),
         indeterminate=float(np.mean(~possible & ~excluded)),
         excluded=float(np.mean(excluded & ~possible)),
     )
-    return Sampled(population=population, draw=drawn, peaks=peaks)
+    return Sampled(population=population, draw=drawn, peaks=peaks, wall=wall)
+
+
+def quiet_wall(inputs: Inputs, drawn: Draw, peaks: BubblePeaks) -> Floats:
+    """Peak temperature of the oil surface by the line pressure alone [K].
+
+    The spike of a spherical collapse would heat the surface too, but only as an upper bound, which
+    must not count for a fuel vapour.
+    """
+    wall, fast = peaks.wall.copy(), peaks.inertial
+    if fast.any():
+        wall[fast] = bubble_batch(
+            drawn.radius[fast], drawn.temperature[fast], drawn.inlet[fast], drawn.discharge[fast],
+            drawn.rise[fast], hold=HOLD, oil=inputs.oil, inertial=False,
+            conduction_factor=drawn.conduction[fast],
+        ).wall  # fmt: skip
+    return wall
 
 
 def influences(inputs: Inputs, sampled: Sampled) -> tuple[Influence, ...]:
@@ -150,7 +169,9 @@ def influences(inputs: Inputs, sampled: Sampled) -> tuple[Influence, ...]:
     for i, values in enumerate(columns.values()):
         rows[2 * i, i], rows[2 * i + 1, i] = np.quantile(values, [0.05, 0.95])
     r, rise, p1, t, p2, k = rows.T
-    core = bubble_batch(r, t, p1, p2, rise, hold=HOLD, oil=inputs.oil, conduction_factor=k).core
+    core = bubble_batch(
+        r, t, p1, p2, rise, hold=HOLD, oil=inputs.oil, conduction_factor=k, keep_beyond=True
+    ).core
     found = [
         Influence(
             name=name,

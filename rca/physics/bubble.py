@@ -32,6 +32,7 @@ _FAILURES = {
     3: "too many steps",
     4: f"the gas passed {T_MAX:g} K, the end of its property table",
 }
+_BEYOND = 4
 CORE_GRID = (48, 24)  # gas and oil cells of a single history
 BATCH_GRID = (24, 10)  # of a batch; within 0.5 % of the rise of the fine grid
 THRESHOLDS = (800.0, 1000.0)  # [K], times above these are reported
@@ -69,6 +70,7 @@ class BubblePeaks:
     end_time: Floats  # time reached [s]
     steps: Floats  # accepted and rejected [-]
     inertial: npt.NDArray[np.bool_]
+    beyond: npt.NDArray[np.bool_]  # stopped where the gas passed 6000 K; peaks are lower bounds
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -157,12 +159,15 @@ def _peaks(outs: Floats, inertial: npt.NDArray[np.bool_]) -> BubblePeaks:
         core=column[1], mean=column[2], wall=column[3], pressure=column[4],
         delay_integral=column[5], above=(column[6], column[7]), end_time=column[8],
         steps=column[9] + column[13], core_time=column[10], core_at_ramp_end=column[11],
-        radius_min=column[12], inertial=inertial,
+        radius_min=column[12], inertial=inertial, beyond=column[0] == _BEYOND,
     )  # fmt: skip
 
 
-def _refuse_failures(outs: Floats, pars: Floats) -> None:
-    bad = np.flatnonzero(outs[:, 0] != 0)
+def _refuse_failures(outs: Floats, pars: Floats, *, keep_beyond: bool = False) -> None:
+    failed = outs[:, 0] != 0
+    if keep_beyond:
+        failed &= outs[:, 0] != _BEYOND
+    bad = np.flatnonzero(failed)
     if bad.size:
         i = int(bad[0])
         raise SolverError(
@@ -249,13 +254,16 @@ def bubble_batch(
     thresholds: tuple[float, float] = THRESHOLDS,
     stop_below: float = 600.0,
     stop_at_ignition: bool = False,
+    keep_beyond: bool = False,
     workers: int = 1,
 ) -> BubblePeaks:
     """Peaks of many bubbles, each under a linear rise from ``p_start`` to ``p_end`` [Pa abs].
 
     Inputs broadcast to one dimension: ``radius`` [m], ``temperature`` [K], ``rise_time`` [s],
     ``hold`` [s] at ``p_end`` after it (a history ends earlier once its core is below
-    ``stop_below`` [K]). ``workers`` threads share the rows; the default starts none.
+    ``stop_below`` [K]). A violent collapse may pass 6000 K, the end of the gas properties: that
+    is a failure, unless ``keep_beyond`` keeps such histories, marked in ``beyond``. ``workers``
+    threads share the rows; the default starts none.
     Raises OutOfRangeError for bad input, SolverError (with the state) when a history fails.
     """
     from rca.physics import bubble_kernel  # noqa: PLC0415 - compiled code is loaded on first use
@@ -291,7 +299,7 @@ def bubble_batch(
         )  # fmt: skip
 
     share(part, r.size, workers)
-    _refuse_failures(outs, pars)
+    _refuse_failures(outs, pars, keep_beyond=keep_beyond)
     return _peaks(outs, fast)
 
 

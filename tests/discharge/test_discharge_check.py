@@ -278,3 +278,20 @@ def test_oil_side(small_case):
 
 def test_defaults_are_marked_as_defaults(small_case):
     assert check(small_case).fuel.flash_point.origin is Origin.DEFAULT
+
+
+@pytest.mark.parametrize(("inlet", "more"), [
+    ((0.3e5, 0.1e5), {"discharge_pressure": reading(700e5), "transition_angle": reading(0.01, "rad"), "speed": reading(60.0, "1/s")}),
+    ((0.05e5, 0.04e5), {"discharge_pressure": reading(350e5)}),
+    ((5e5, 0.5e5), {"discharge_pressure": reading(350e5)}),
+    ((0.9e5, 0.05e5), {"discharge_pressure": reading(5e5)}),
+], ids=["700 bar in microseconds", "near vapour", "boosted inlet", "5 bar"])  # fmt: skip
+def test_extreme_machines_get_an_answer(small_case, inlet, more):
+    found = check(with_pump(small_case, **more), inlet=inlet)
+    assert found.hot is not None
+    violent = sum(p.beyond for p in found.populations)
+    if inlet[0] < 0.1e5:  # the spike of a spherical collapse, an upper bound, adds no vapour
+        assert found.fuel.vapour < 0.05
+    assert (violent > 0) is (inlet[0] < 0.5e5)
+    if found.discharge_pressure.value > 350e5:
+        assert any("350 bar" in words for words in found.assumed)

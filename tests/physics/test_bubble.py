@@ -372,3 +372,12 @@ def test_refuses_bad_input(bad):
 def test_refuses_a_bad_course_of_pressure(time, pressure):
     with pytest.raises(OutOfRangeError):
         bubble_history(1e-4, T0, time, pressure)
+
+
+def test_a_collapse_beyond_the_gas_table_is_refused_or_marked():
+    wild = {"radius": [1e-4, 3e-3], "temperature": 600.0, "p_start": 2e4, "p_end": 900e5, "rise_time": 1e-6}  # fmt: skip
+    with pytest.raises(SolverError, match="6000 K"):
+        bubble_batch(**wild)
+    peaks = bubble_batch(**wild, keep_beyond=True)
+    assert peaks.beyond.any()
+    assert np.all(peaks.core[peaks.beyond] > 5900)
