@@ -1,7 +1,8 @@
 """Coefficients of the stiff time integrator that the bubble kernels share.
 
 ROS34PW2: four stages, order three for any approximate Jacobian (a W-method), L-stable, with an
-embedded method of order two. Source: Rang and Angermann, BIT Numer. Math. 45 (2005) 761-787.
+embedded method of order two. Source: Rang and Angermann, BIT Numer. Math. 45 (2005) 761-787
+(coefficients from memory; the order is tested).
 The published alpha, gamma and b are transformed so that no stage multiplies by the Jacobian
 (Hairer and Wanner, Solving Ordinary Differential Equations II, sec. IV.7).
 """
