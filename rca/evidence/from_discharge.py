@@ -10,6 +10,9 @@ from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
 # Likelihood ratios a computed answer may reach. The spherical bubble keeps its heat too well, so
 # the model may argue against hot bubbles more strongly than for them; judgement.
 MOST_AGAINST, MOST_FOR = 1 / 20, 3.0
+# Share of the entrained air that must stay hot for anything to show: burning a twentieth of one
+# per cent of entrained air blackens an oil within some thousand passes; judgement.
+RELEVANT_SHARE = 0.05
 FAST_RISE = 3e-3  # [s] and
 HIGH_PRESSURE = 100e5  # [Pa]: where the rise is called fast and high; common practice, no source
 SEEN_OVER, SEEN_UNDER = 10.0, 0.3  # a record that shows excess pressure, or none; judgement
@@ -50,7 +53,8 @@ def _hot(case: Case, check: DischargeCheck) -> EvidenceItem | NotAssessed:
             node=Node.HOT_BUBBLES,
             missing="; ".join(check.missing) or "a usable discharge check",
         )
-    ratio = _bounded(check.possible + 0.5 * check.indeterminate, MOST_AGAINST, MOST_FOR)
+    share = check.possible + 0.5 * check.indeterminate
+    ratio = min(max(share / RELEVANT_SHARE, MOST_AGAINST), MOST_FOR)
     rest = 1.0 - check.possible - check.indeterminate
     return EvidenceItem(
         key="discharge.hot_bubbles",
