@@ -5,7 +5,7 @@ import tomllib
 import unicodedata
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, lru_cache
 from importlib.resources import files
 from typing import Any
 
@@ -74,9 +74,16 @@ def _meta_names() -> dict[str, str]:
     }
 
 
+@cache
 def words(kind: str) -> frozenset[str]:
     """A list of words: new_oil, not_tested, not_detected or not_a_sample."""
     return frozenset(_data()["words"][kind])
+
+
+@cache
+def folded_words(kind: str) -> frozenset[str]:
+    """The same list, folded."""
+    return frozenset(fold(word) for word in words(kind))
 
 
 def elements() -> tuple[str, ...]:
@@ -89,6 +96,7 @@ def known_names() -> tuple[str, ...]:
     return (*_data()["property"], *elements(), *(m for m in _data()["meta"] if m != "date"))
 
 
+@lru_cache(maxsize=20000)
 def fold(text: str) -> str:
     """Lower case, accents and umlauts simplified, only letters, digits and single blanks."""
     plain = unicodedata.normalize("NFKD", text.replace("ß", "ss").replace("ø", "o"))
@@ -103,6 +111,7 @@ def _looked_up(text: str, names: Mapping[str, str]) -> str | None:
     return names.get(folded) or names.get(re.sub(r"([aou])e", r"\1", folded))
 
 
+@cache
 def property_of(name: str) -> Property:
     """The property by its canonical name or element symbol."""
     row = _data()["property"].get(name, {"unit": "mg/kg", "low": -0.5, "high": 500000.0})
@@ -184,6 +193,7 @@ def fold_unit(unit: str) -> str:
     return re.sub(r"\s+", "", plain).casefold().replace(",", ".").replace("mm^2", "mm2")
 
 
+@lru_cache(maxsize=20000)
 def unit_factor(name: str, unit: str) -> float | None:
     """Factor from a written unit to the one kept; None where the unit does not fit."""
     kept = property_of(name).unit if name not in ("h", "L") else name

@@ -21,7 +21,14 @@ from rca.intake.oil_cells import (
 )
 from rca.intake.oil_dates import day_first_of, parse_day
 from rca.intake.oil_layout import Layout, is_no_sample
-from rca.intake.oil_properties import Heading, fold, heading_of, property_of, unit_factor, words
+from rca.intake.oil_properties import (
+    Heading,
+    fold,
+    folded_words,
+    heading_of,
+    property_of,
+    unit_factor,
+)
 from rca.intake.tables import Cell
 
 _REVISION = re.compile(r"[\s(_-]*\brev(?:ision)?\.?\s*(\d+)\)?\s*$", re.IGNORECASE)
@@ -312,7 +319,7 @@ def _with_id(meta: Meta, name: str) -> Meta:
 
 def _is_new(meta: Meta, name: str) -> bool:
     kind, first = fold(meta("kind")), fold(name)
-    known = {fold(word) for word in words("new_oil")}
+    known = folded_words("new_oil")
     starts = first.split(" ")[0] if first else ""
     return kind in known or starts in known or bool(_OF_NEW_OIL.search(fold(meta("comment"))))
 

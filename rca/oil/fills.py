@@ -1,7 +1,7 @@
 """The life of the oil: fills between oil changes, top-ups, laboratories, hours on the oil."""
 
 import re
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date, datetime
 from itertools import pairwise
@@ -71,13 +71,12 @@ def oil_life(case: Case, samples: Sequence[OilSample]) -> OilLife:
     events.sort(key=lambda e: (e.when, e.kind))
     changes = [e.when for e in events if e.kind == "oil change"]
     stretches = [e.when for e in events if e.kind == "laboratory change"]
+    begins = {day: _hours_at(day, samples) for day in changes}
     places = tuple(
         Place(
             fill=_count(changes, s.sampled),
             stretch=_count(stretches, s.sampled),
-            oil_hours=s.oil_hours
-            if s.oil_hours is not None
-            else _hours_since(s, samples, changes),
+            oil_hours=s.oil_hours if s.oil_hours is not None else _hours_since(s, begins),
         )
         for s in samples
     )
@@ -141,24 +140,28 @@ def _meter_set_back(samples: Sequence[OilSample]) -> list[OilEvent]:
     return found
 
 
-def _hours_since(
-    sample: OilSample, samples: Sequence[OilSample], changes: Sequence[date]
-) -> float | None:
-    """Machine hours since the oil change, by machine hours between the samples around it."""
-    if sample.machine_hours is None or sample.sampled is None:
-        return None
-    last = max((day for day in changes if day <= sample.sampled), default=None)
-    if last is None:
-        return sample.machine_hours
+def _hours_at(day: date, samples: Sequence[OilSample]) -> float | None:
+    """Machine hours at a day, between the samples around it; None where the meter was set back."""
     known = [(s.sampled, s.machine_hours) for s in samples if s.sampled and s.machine_hours]
-    before = [(d, h) for d, h in known if d <= last]
-    after = [(d, h) for d, h in known if d >= last]
+    before = [(d, h) for d, h in known if d <= day]
+    after = [(d, h) for d, h in known if d >= day]
     if not before or not after or after[0][1] < before[-1][1]:
         return None
     (d0, h0), (d1, h1) = before[-1], after[0]
-    share = (last - d0).days / max((d1 - d0).days, 1)
-    hours = sample.machine_hours - (h0 + share * (h1 - h0))
-    return hours if hours >= 0.0 else None
+    return h0 + (day - d0).days / max((d1 - d0).days, 1) * (h1 - h0)
+
+
+def _hours_since(sample: OilSample, begins: Mapping[date, float | None]) -> float | None:
+    """Machine hours since the oil change; all machine hours where no change is on record."""
+    if sample.machine_hours is None or sample.sampled is None:
+        return None
+    last = max((day for day in begins if day <= sample.sampled), default=None)
+    if last is None:
+        return sample.machine_hours
+    at_change = begins[last]
+    if at_change is None or sample.machine_hours < at_change:
+        return None
+    return sample.machine_hours - at_change
 
 
 def _count(days: Sequence[date], day: date | None) -> int:

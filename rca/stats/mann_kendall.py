@@ -13,6 +13,7 @@ from rca.base.errors import OutOfRangeError
 from rca.stats.censored_order import checked, rises
 
 MOST_STATES = 5000  # of the exact count; 12 different values need 4096
+EXACT_WITHOUT_TIES = 30
 PLAIN_ABOVE = 400  # points without limits from which the order is counted by sorting
 
 
@@ -99,10 +100,17 @@ def _one_group(
     up = rises(x, marks)
     s = int(np.triu(up, k=1).sum(dtype=np.int64))
     kinds = Counter(zip(x.tolist(), marks, strict=True))
-    if len(kinds) == n and plain and n <= 60:
+    if len(kinds) == n and plain and n <= EXACT_WITHOUT_TIES:
         return s, _variance_of_ties(x), _distribution_without_ties(n)
     small = prod(count + 1 for count in kinds.values()) <= MOST_STATES
     return s, _permutation_variance(up), _distribution(kinds) if small else None
+
+
+def variance_of_s(values: Sequence[float], groups: Sequence[int] = ()) -> float:
+    """Variance of S with ties, summed over groups, without the test."""
+    x, _ = checked(values, ())
+    labels = np.asarray(groups) if groups else np.zeros(x.size)
+    return sum(_variance_of_ties(x[labels == one]) for one in np.unique(labels))
 
 
 def _s_by_sorting(x: np.ndarray) -> int:

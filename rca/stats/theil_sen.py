@@ -10,7 +10,7 @@ from scipy.stats import norm
 
 from rca.base.errors import OutOfRangeError
 from rca.stats.censored_order import checked, rises
-from rca.stats.mann_kendall import mann_kendall
+from rca.stats.mann_kendall import mann_kendall, variance_of_s
 
 FloatArray = npt.NDArray[np.float64]
 BISECTIONS = 80
@@ -47,10 +47,9 @@ def theil_sen(
         raise OutOfRangeError("theil_sen needs at least two different times in one group")
     slopes = np.sort((x[j] - x[i])[good] / (t[j] - t[i])[good])
     slope = float(np.median(slopes))
-    order = np.argsort(t, kind="stable")
     variance = 1.0
     if t.size > 2:
-        variance = mann_kendall(x[order].tolist(), groups=tuple(labels[order].tolist())).variance
+        variance = variance_of_s(x.tolist(), labels.tolist())
     half = float(norm.ppf(0.5 + level / 2)) * sqrt(variance)
     low = max(int(np.rint((slopes.size - half) / 2.0)) - 1, 0)
     high = min(int(np.rint((slopes.size + half) / 2.0)), slopes.size - 1)
