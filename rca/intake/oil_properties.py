@@ -138,7 +138,8 @@ def heading_of(text: str) -> Heading | None:
             return Heading(name=name, unit=unit, method="" if _SCALE.search(written) else written)
         if name is not None and _foreign(unit):
             return Heading(name=name, unit=unit, method=written)
-    return None
+    remarks = re.sub(r"\s*\([^)]*\)\s*", " ", bare).strip()  # "Wassergehalt (KF) ppm"
+    return heading_of(f"{remarks} {written}".strip()) if remarks not in ("", bare) else None
 
 
 def _splits(text: str) -> list[tuple[str, str]]:
