@@ -25,7 +25,7 @@ class Table:
     columns: tuple[Column, ...]
     rows: tuple[tuple[str, ...], ...]
     note: str = ""  # where a limit is applied, the rule is stated here
-    shown: int = 18
+    shown: int = 12
     marks: tuple[str, ...] = ()  # per row: "", "beyond", "near", "set aside"; shown as a word too
 
 

@@ -3,6 +3,7 @@
 import numpy as np
 from matplotlib.figure import Figure
 
+from rca.figures.numbers import share
 from rca.figures.style import DISCHARGE, GREY, PALE, SUCTION, new_figure
 from rca.verdict.model import VerdictCheck
 
@@ -48,7 +49,7 @@ def sides(check: VerdictCheck) -> Figure:
         ax.plot([p], [y], marker=marker, color=colour, markersize=8)
         ax.plot([prior], [y], marker="|", color=GREY, markersize=11, markeredgewidth=1.4)
         ax.text(-0.02, y, name, ha="right", va="center")
-        ax.text(1.03, y, f"{p:.2f}", va="center", fontweight="semibold", color=colour)
+        ax.text(1.03, y, share(p), va="center", fontweight="semibold", color=colour)
     for x in (0.6, 0.75):
         ax.axvline(x, color=GREY, linewidth=0.7, linestyle=(0, (3, 2)))
     ax.annotate(
@@ -61,7 +62,7 @@ def sides(check: VerdictCheck) -> Figure:
         color=GREY,
         va="bottom",
     )
-    ax.set_xlim(-0.02, 1.1)
+    ax.set_xlim(-0.02, 1.14)
     ax.set_ylim(-1.6, 0.9)
     ax.set_yticks([])
     ax.set_xticks([0, 0.25, 0.5, 0.75, 1.0])
