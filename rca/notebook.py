@@ -30,7 +30,6 @@ from rca.base.errors import CaseError, Problem
 from rca.base.panel import Section
 from rca.base.units import QUANTITY_DIMENSIONS, parse_quantity
 from rca.case.model import Case, Gap
-from rca.case.oil import OilSample
 from rca.case.series import AlignedRecord, FloatArray
 from rca.damage.check import DamageCheck, check_damage
 from rca.discharge.check import check_discharge
@@ -206,9 +205,15 @@ class Investigation:
         """The record files as they were read, for the table of their quality."""
         return tuple(
             FileRow(
-                file=f.file, rows=f.rows, start_s=f.start_s, end_s=f.end_s,
-                interval_s=f.interval_s, gaps=f.gaps, bad_stamps=f.bad_stamps,
-                backward_stamps=f.backward_stamps, bad_cells=sum(f.bad_cells.values()),
+                file=f.file,
+                rows=f.rows,
+                start_s=f.start_s,
+                end_s=f.end_s,
+                interval_s=f.interval_s,
+                gaps=f.gaps,
+                bad_stamps=f.bad_stamps,
+                backward_stamps=f.backward_stamps,
+                bad_cells=sum(f.bad_cells.values()),
                 offset_s=f.offset_s,
             )
             for f in reading.files
@@ -238,8 +243,9 @@ class Investigation:
     def _last_day(self) -> date | None:
         """The latest day anything in the folder speaks of; the clock is never asked."""
         days = [a.done for a in self.case.actions if a.done is not None]
-        days += [e.when.date() if isinstance(e.when, datetime) else e.when
-                 for e in self.case.history]
+        days += [
+            e.when.date() if isinstance(e.when, datetime) else e.when for e in self.case.history
+        ]
         days += [f.when for f in self.case.findings if f.when is not None]
         record = self.aligned()
         if record is not None and record.time_s.size:

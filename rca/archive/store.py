@@ -21,9 +21,9 @@ import numpy as np
 from rca.archive.codec import dumps, from_plain, to_plain
 from rca.base.errors import ArchiveError
 from rca.base.panel import Section, Table
+from rca.base.source import Source
 from rca.case.model import Gap
 from rca.case.series import AlignedRecord, Series
-from rca.base.source import Source
 from rca.evidence.item import EvidenceItem, NotAssessed
 
 _NAME = re.compile(r"[a-z0-9][a-z0-9._-]*")

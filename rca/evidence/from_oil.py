@@ -18,7 +18,7 @@ from rca.case.model import Case
 from rca.case.vocabulary import FluidClass
 from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
 from rca.oil.check import OilCheck
-from rca.oil.darkening import DARK, Darkening
+from rca.oil.darkening import DARK, FAST_DAYS, Darkening
 from rca.oil.judge import Judged
 from rca.oil.words import property_name, unit_text
 
@@ -64,6 +64,8 @@ _RULES = (
     _Rule(Node.WRONG_FLUID, ("Zn", "P", "Ca", "Mg", "Mo", "B"), 0, 0.20, 0.03, 2.0),
     _Rule(Node.CHLORINE, ("Cl",), 1, 0.20, 0.06),
 )
+# noise floors within which a routine value passes for normal in daily practice; judgement
+_ROUTINE = {"viscosity_40": 4.0, "acid_number": 1.0, "oxidation": 2.5}
 _SILICON_ALONE = 0.30  # in place of the share of other causes where aluminium was not tested
 
 
@@ -194,7 +196,7 @@ def _speed(dark: Darkening, fresh: float) -> tuple[dict[str, float], dict[str, f
         return {"no": 0.5, "yes": 0.4}, {"no": 0.45, "yes": 0.5}
     if dark.gradual:
         return {"no": 0.6, "yes": 0.15}, {"no": 0.12, "yes": 0.8}
-    if dark.step_days is None or dark.step_days > 200:
+    if dark.step_days is None or dark.step_days > FAST_DAYS:
         return {"no": 0.3, "yes": 0.45}, {"no": 0.3, "yes": 0.6}
     if dark.step_days <= 60:
         return {"no": 0.07, "yes": 0.85}, {"no": 0.6, "yes": 0.25}
@@ -208,8 +210,6 @@ def _colour_item(
     if dark.step_days is not None:
         since = "the fill" if dark.step_from == "fill" else f"sample {dark.step_from}"
         when = f"; most of the change came within {dark.step_days} days after {since}"
-    elif dark.gradual:
-        when = f"; the change came step by step over {dark.points} samples"
     return EvidenceItem(
         key=key,
         node=node,
@@ -228,15 +228,13 @@ def _colour_item(
 
 def _routine(check: OilCheck, dark: Darkening) -> Found:
     """Dark oil with flat routine values; light oil says nothing of this."""
-    names = [n for n in ("viscosity_40", "acid_number", "oxidation") if n in check.judged]
-    known = [one for n in names if (one := check.judged[n]).stands_out is not None]
+    tested = [check.judged[name] for name in _ROUTINE if name in check.judged]
+    known = [one for one in tested if one.stands_out is not None]
     key, node = "oil.routine", Node.ROUTINE_NORMAL_DARK
     if len(known) < 2:
         missing = "viscosity and acid number of used and new oil beside its colour"
         return NotAssessed(key=key, node=node, missing=missing)
-    flat = all(
-        abs(one.stands_out or 0.0) < (3.0 if "visc" in one.property else 1.0) for one in known
-    )
+    flat = all(abs(one.stands_out or 0.0) < _ROUTINE[one.property] for one in known)
     if dark.change < DARK:
         likelihood = {"no": 0.7, "yes": 0.3}
     else:

@@ -12,7 +12,7 @@ OVER = 1.10  # share of nominal speed or rated pressure that counts as beyond
 def from_records(
     case: Case, check: RecordCheck, aligned: AlignedRecord | None
 ) -> tuple[EvidenceItem | NotAssessed, ...]:
-    """Items on speed and temperature; pressure above rating and its rise are ``from_discharge``'s."""
+    """Items on speed and temperature; ``from_discharge`` speaks of pressure and its rise."""
     duty = check.duty
     speed = case.pump.maximum_speed or case.pump.speed
     return (

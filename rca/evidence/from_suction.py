@@ -183,8 +183,9 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
     if measured is not None and check.limit is not None:
         share = measured.below_limit
         words = (
-            f"With cold oil the measured inlet pressure is below the limit for {100 * share:.0f} % "
-            f"of {measured.hours:.1f} h; lowest {measured.lowest / 1e5:.2f} bar(a)."
+            f"With cold oil the measured inlet pressure is below the limit for "
+            f"{100 * share:.0f} % of {measured.hours:.1f} h; "
+            f"lowest {measured.lowest / 1e5:.2f} bar(a)."
         )
     elif cold is not None:
         share = cold.below_limit

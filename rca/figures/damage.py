@@ -1,6 +1,7 @@
 """Where the damage lies: a neutral drawing of the pump's faces with the observed zones marked."""
 
 from collections.abc import Callable
+from typing import Any
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -34,7 +35,7 @@ def worst_by_zone(check: DamageCheck) -> dict[str, Observation]:
 
 
 def damage_map(case: Case, check: DamageCheck) -> Figure:
-    """The face where inlet and discharge meet, and the other zones as labelled fields beside it."""
+    """The face where inlet and discharge meet, and the other zones as fields beside it."""
     figure, axes = new_figure(height_in=3.1, columns=2)
     face, fields = axes
     worst = worst_by_zone(check)
@@ -45,7 +46,7 @@ def damage_map(case: Case, check: DamageCheck) -> Figure:
     return figure
 
 
-def _style(worst: dict[str, Observation], zone: str) -> dict[str, object]:
+def _style(worst: dict[str, Observation], zone: str) -> dict[str, Any]:
     one = worst.get(zone)
     if one is None:
         return {"facecolor": "white", "edgecolor": GREY, "linewidth": 0.7}

@@ -72,7 +72,7 @@ def shown_properties(check: OilCheck, figure: str) -> tuple[str, ...]:
 def trend_figure(check: OilCheck, properties: Sequence[str]) -> Figure:
     """Small multiples, one a property; resets, laboratories, limits and R are drawn and named."""
     rows = (len(properties) + 1) // 2
-    with mpl.rc_context(rc()):  # type: ignore[arg-type]
+    with mpl.rc_context(rc()):
         figure, axes = new_figure(height_in=0.45 + 1.35 * rows, rows=rows, columns=2)
         for place, (axis, name) in enumerate(zip(axes, properties, strict=False)):
             _draw(axis, check, name)
@@ -120,9 +120,9 @@ def _draw(axes: Axes, check: OilCheck, name: str) -> None:
     if on_hours:
         axes.locator_params(axis="x", nbins=5)
     else:
-        locator = dates.AutoDateLocator(maxticks=5)  # type: ignore[no-untyped-call]
+        locator = dates.AutoDateLocator(maxticks=5)
         axes.xaxis.set_major_locator(locator)
-        formatter = dates.DateFormatter("%b %y")  # type: ignore[no-untyped-call]
+        formatter = dates.DateFormatter("%b %y")
         axes.xaxis.set_major_formatter(formatter)
 
 
@@ -249,4 +249,4 @@ def _x(point: Point, *, on_hours: bool) -> float:
 
 
 def _day(day: date) -> float:
-    return float(dates.date2num(day))  # type: ignore[no-untyped-call]
+    return float(dates.date2num(day))

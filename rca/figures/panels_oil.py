@@ -191,8 +191,6 @@ def _darkening(check: OilCheck) -> str:
     if dark.step_days is not None:
         since = "the oil change" if dark.step_from == "fill" else f"sample {dark.step_from}"
         return f"{change} Most of it came within {dark.step_days} days after {since}."
-    if dark.gradual:
-        return f"{change} It came gradually over {dark.points} samples."
     return change
 
 

@@ -1,7 +1,6 @@
 """Figures of the records: inlet pressure in time with its extremes, spectrum of a burst."""
 
 from collections.abc import Sequence
-from datetime import UTC, datetime
 
 import numpy as np
 from matplotlib.dates import AutoDateLocator, ConciseDateFormatter
@@ -38,14 +37,15 @@ def inlet_in_time(check: RecordCheck, aligned: AlignedRecord) -> Figure:
     blocks = np.array_split(np.arange(aligned.time_s.size), min(COLUMNS, aligned.time_s.size))
     time, low, mid, high = [], [], [], []
     for block in blocks:
-        time.append(datetime.fromtimestamp(float(aligned.time_s[block].mean()), tz=UTC))
+        time.append(1e3 * float(aligned.time_s[block].mean()))
         seen = np.isfinite(series.mean[block])
         part = block[seen]
         low.append(series.low[part].min() / 1e5 if part.size else np.nan)
         high.append(series.high[part].max() / 1e5 if part.size else np.nan)
         mid.append(float(np.median(series.mean[part])) / 1e5 if part.size else np.nan)
-    ax.fill_between(time, low, high, color=PALE, linewidth=0, rasterized=True)  # type: ignore[arg-type]
-    ax.plot(time, mid, color=SUCTION, linewidth=0.9, rasterized=True)  # type: ignore[arg-type]
+    days = np.array(time).astype("datetime64[ms]")
+    ax.fill_between(days, low, high, color=PALE, linewidth=0, rasterized=True)
+    ax.plot(days, mid, color=SUCTION, linewidth=0.9, rasterized=True)
     if check.limit is not None:
         limit_line(ax, check.limit / 1e5, "lowest allowed", colour=DISCHARGE)
     ax.set_ylim(bottom=0)

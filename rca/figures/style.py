@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from functools import cache
 from importlib.resources import files
 from pathlib import Path
+from typing import Any
 
 import matplotlib as mpl
 from matplotlib import font_manager
@@ -55,7 +56,7 @@ def _register_fonts() -> None:
         font_manager.fontManager.addfont(path)
 
 
-def rc() -> dict[str, object]:
+def rc() -> dict[Any, Any]:
     """Matplotlib settings of every figure."""
     _register_fonts()
     return {

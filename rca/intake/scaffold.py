@@ -6,7 +6,7 @@ from rca.base.errors import ArchiveError
 from rca.intake.evidence_tables import ACTIONS, CUSTODY, FINDINGS, HISTORY
 from rca.intake.photos import COLUMNS as PHOTOS
 
-DESCRIPTOR = """# The descriptor of the case. Quantities stand in quotes with their unit; dates do not.
+DESCRIPTOR = """# The descriptor. Quantities stand in quotes with their unit; dates do not.
 # A pressure says whether it is absolute, "0.85 bar(a)", or gauge, "210 bar(g)".
 # An uncertainty may follow: "0.82 bar(a) +/- 0.03 bar". Lines that begin with # are not read.
 format = 1

@@ -9,7 +9,7 @@ D7843 (patch colours); the rest common practice, no source.
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from rca.oil.darkening import DARK, Darkening
+from rca.oil.darkening import DARK, FAST_DAYS, Darkening
 from rca.oil.judge import Judged
 
 State = bool | None  # seen, looked for and not shown, not tested
@@ -48,18 +48,14 @@ class _Facts:
         )
 
     def darkened(self, *, fast: bool) -> State:
-        """Whether the oil darkened, inside 60 days or gradually."""
+        """Whether the oil darkened, most of it inside FAST_DAYS or over longer."""
         if self.dark is None:
             return None
         if self.dark.change < DARK:
             return False
-        if fast:
-            return (
-                None
-                if self.dark.step_days is None and not self.dark.gradual
-                else (self.dark.step_days is not None and self.dark.step_days <= 60)
-            )
-        return self.dark.gradual
+        if self.dark.step_days is None:
+            return None
+        return (self.dark.step_days <= FAST_DAYS) is fast
 
     def below(self, name: str, limit: float) -> State:
         """Whether a property lies below a number."""
@@ -96,7 +92,7 @@ _PICTURES: tuple[tuple[str, tuple[tuple[str, _Test], ...]], ...] = (
     (
         "combustion of air bubbles",
         (
-            ("darkened within 60 days", lambda f: f.darkened(fast=True)),
+            ("most of the darkening within 200 days", lambda f: f.darkened(fast=True)),
             ("soot above new oil", lambda f: f.moved("soot", 1)),
             ("nitration above new oil", lambda f: f.moved("nitration", 1)),
             ("viscosity and acid number flat", lambda f: f.flat("viscosity_40", "acid_number")),

@@ -8,7 +8,8 @@ from rca.base.source import Source
 from rca.oil.reference import Reference
 from rca.oil.trends import Row
 
-MOST_OF_IT = 0.6  # share of the change that has to come inside one interval to call it a step
+MOST_OF_IT = 0.6  # share of the change whose shortest time is looked for
+FAST_DAYS = 200  # half a year and a sampling interval; common practice, no source
 DARK = 2.0  # ASTM D1500 units above new: twice the method's R
 
 
@@ -23,9 +24,9 @@ class Darkening:
     new_from: str
     u_new: float
     change: float  # at least this much where the latest result is "over 8"
-    step_days: int | None  # longest time most of the change can have taken; None if unknown
-    step_from: str  # sample before the step, or "fill"
-    gradual: bool  # three results or more and no interval holds most of the change
+    step_days: int | None  # shortest time that holds most of the change; None if unknown
+    step_from: str  # sample at its beginning, or "fill"
+    gradual: bool  # most of the change took longer than FAST_DAYS, over three results or more
     points: int
 
 
@@ -41,7 +42,7 @@ def darkening_of(
     last = rows[-1]
     change = last.value.value - reference.value
     step_days, step_from = _step(rows, reference.value, change, filled)
-    gradual = step_days is None and len(rows) >= 3 and change >= DARK
+    gradual = len(rows) >= 3 and step_days is not None and step_days > FAST_DAYS
     return Darkening(
         text=last.value.text,
         sample=last.sample.id,
@@ -60,15 +61,25 @@ def darkening_of(
 def _step(
     rows: Sequence[Row], new: float, change: float, filled: date | None
 ) -> tuple[int | None, str]:
-    """Days between the last result before most of the change and the first one after it."""
+    """Shortest time between two results that holds most of the change, and its beginning.
+
+    The oil was as new on the day of the fill, where that day is known.
+    """
     if change < DARK:
         return None, ""
-    before_day, before_level, before = filled, new, "fill"
-    for row in rows:
-        day = row.sample.sampled
-        if row.value.value - before_level >= MOST_OF_IT * change:
-            if before_day is None or day is None:
-                return None, before
-            return (day - before_day).days, before
-        before_day, before_level, before = day, row.value.value, row.sample.id
-    return None, ""
+    series = [
+        (row.sample.sampled, row.value.value, row.sample.id)
+        for row in rows
+        if row.sample.sampled is not None
+    ]
+    if filled is not None:
+        series.insert(0, (filled, new, "fill"))
+    best: tuple[int, str] | None = None
+    for i, (begin, level, name) in enumerate(series):
+        for end, later, _ in series[i + 1 :]:
+            if later - level < MOST_OF_IT * change:
+                continue
+            days = (end - begin).days
+            if best is None or days < best[0]:
+                best = (days, name)
+    return best if best is not None else (None, "")

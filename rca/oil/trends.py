@@ -61,7 +61,7 @@ class Trend:
     first_x: float = 0.0  # [h], where the line begins
     first_y: float | None = None  # on the line
     laboratories: int = 1  # or methods; pairs are compared inside one only
-    laboratory_step: float | None = None  # median residual after minus before the change
+    laboratory_step: float | None = None  # between the neighbours of the change, less slope
     corrected: bool = False  # for top-ups
     outliers: tuple[str, ...] = ()  # sample ids, flagged and kept
     per_1000h_without: float | None = None  # the slope with the flagged results left out
@@ -167,15 +167,21 @@ def _slope(
 def _laboratory_step(
     residuals: np.ndarray, groups: Sequence[int]
 ) -> tuple[float | None, np.ndarray]:
-    """Level of the last laboratory against the one before, and residuals about each level."""
+    """Step of the residuals at the last change of laboratory, and residuals about each level.
+
+    The step is between the neighbours of the change only: a line that bends would otherwise look
+    like a step.
+    """
     labels = np.asarray(groups)
     centred = residuals.astype(float)
-    medians = []
     for label in dict.fromkeys(groups):
         inside = labels == label
-        medians.append(float(np.median(residuals[inside])))
-        centred[inside] -= medians[-1]
-    return (medians[-1] - medians[-2] if len(medians) > 1 else None), centred
+        centred[inside] -= float(np.median(residuals[inside]))
+    changes = np.nonzero(np.diff(labels))[0]
+    if changes.size == 0:
+        return None, centred
+    last = int(changes[-1])
+    return float(residuals[last + 1] - residuals[last]), centred
 
 
 def _apart(centred: np.ndarray, ops: Sequence[str], noise: float) -> tuple[int, ...]:

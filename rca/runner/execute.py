@@ -26,11 +26,12 @@ def read_notebook(path: Path) -> NotebookNode:
     Raises NotebookError where it is no notebook.
     """
     try:
-        return nbformat.read(path, as_version=4)
+        book: NotebookNode = nbformat.read(path, as_version=4)
     except (OSError, NotJSONError, nbformat.ValidationError, AttributeError, KeyError) as error:
         raise NotebookError(
             f"{path.name} is not a notebook of format 4: {error}. Open and save it in JupyterLab."
         ) from error
+    return book
 
 
 def check_notebook(path: Path, parameters: Mapping[str, object]) -> None:

@@ -71,7 +71,7 @@ def checked_parameters(
         kind = known[key].kind
         if kind == "float" and type(value) is int:
             value = float(value)  # noqa: PLW2901  a whole number is a number
-        if type(value) is not _KINDS[kind]:
+        if not isinstance(value, str | int | float | bool) or type(value) is not _KINDS[kind]:
             complaints.append(
                 f"{name}: parameter {key!r} expects {kind}, found {type(value).__name__} {value!r}"
             )
@@ -104,7 +104,7 @@ def _parameter(node: ast.stmt, name: str) -> Parameter:
         ) from error
     if kind == "float" and type(default) is int:
         default = float(default)
-    if type(default) is not _KINDS[kind]:
+    if not isinstance(default, str | int | float | bool) or type(default) is not _KINDS[kind]:
         raise ParameterError(
             f"{name}: {node.target.id!r} is declared {kind} but its default is {default!r}"
         )

@@ -35,20 +35,20 @@ class _Tape(TextIOBase):
         return True
 
 
-class _Publisher(DisplayPublisher):  # type: ignore[misc]  # IPython ships no types
+class _Publisher(DisplayPublisher):
     """Collects what a cell displays."""
 
     outputs: list[Output]
 
-    def publish(self, data: Any, metadata: Any = None, **kwargs: Any) -> None:
+    def publish(self, data: Any, metadata: Any = None, source: Any = None, **kwargs: Any) -> None:
         """Add one display to the cell's outputs."""
-        del kwargs
+        del source, kwargs
         self.outputs.append(
             {"output_type": "display_data", "data": _plain(data), "metadata": metadata or {}}
         )
 
 
-class _Hook(DisplayHook):  # type: ignore[misc]  # IPython ships no types
+class _Hook(DisplayHook):
     """Collects the value of a cell's last expression."""
 
     outputs: list[Output]
@@ -74,7 +74,7 @@ class _Hook(DisplayHook):  # type: ignore[misc]  # IPython ships no types
         """Nothing is printed after a result."""
 
 
-class _Shell(InteractiveShell):  # type: ignore[misc]  # IPython ships no types
+class _Shell(InteractiveShell):
     """An IPython shell without windows."""
 
     def ask_exit(self) -> None:
@@ -85,6 +85,11 @@ class _Shell(InteractiveShell):  # type: ignore[misc]  # IPython ships no types
         """Figures go into the notebook; there is no window loop to start."""
 
 
+def _made(config: Config) -> Any:
+    """The shell with our two hooks, which its own types don't know."""
+    return _Shell.instance(config=config, display_pub_class=_Publisher, displayhook_class=_Hook)
+
+
 class NotebookShell:
     """One IPython shell, made before the fork so that each copy has it ready."""
 
@@ -93,9 +98,7 @@ class NotebookShell:
         config.HistoryManager.enabled = False  # its thread and its database don't survive a fork
         config.InteractiveShell.colors = "NoColor"
         config.InteractiveShell.autocall = 0
-        self._shell = _Shell.instance(
-            config=config, display_pub_class=_Publisher, displayhook_class=_Hook
-        )
+        self._shell = _made(config)
         self._shell.enable_matplotlib("inline")
         self._outputs: list[Output] = []
         self._failure: Output | None = None

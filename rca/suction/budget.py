@@ -93,6 +93,26 @@ def pump_flow(case: Case, speed: float | FloatArray | None = None) -> FloatArray
     return None if turns is None else np.asarray(pump.displacement.value * np.asarray(turns))
 
 
+def line_residence(case: Case) -> float | None:
+    """Time of the oil in pipes and hoses of the suction line [s] at full flow."""
+    flow = pump_flow(case)
+    volume = sum(
+        np.pi / 4.0 * p.bore.value**2 * p.length.value * p.count
+        for p in case.suction_line
+        if p.part in (PartKind.PIPE, PartKind.HOSE) and p.bore and p.length
+    )
+    return float(volume / flow) if flow is not None and volume > 0 and float(flow) > 0 else None
+
+
+def bunsen(case: Case) -> tuple[float, float]:
+    """Bunsen coefficient [-] of the case and its standard uncertainty; measured wins."""
+    given = case.fluid.bunsen_coefficient
+    values = class_values(fluid_class_name(case))
+    if given is not None:
+        return given.value, given.u if given.u is not None else 0.05 * given.value
+    return values.bunsen, values.bunsen * values.bunsen_u
+
+
 def pressure_budget(
     case: Case,
     flow: float | FloatArray,

@@ -11,12 +11,13 @@ from rca.case.series import AlignedRecord
 from rca.case.vocabulary import PartKind, PumpKind
 from rca.physics.atmosphere import WEATHER_SPREAD
 from rca.physics.dissolved_air import TAU_RELEASE, released_ratio, released_share_in_time
-from rca.physics.fluid_class import class_values
+from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.budget import (
     Budget,
     Condition,
-    fluid_class_name,
+    bunsen,
     fluid_viscosities,
+    line_residence,
     local_atmosphere,
     pressure_budget,
     pump_flow,
@@ -119,26 +120,6 @@ def inlet_limit(case: Case) -> tuple[float | None, str]:
     return None, "no limit: neither the maker's nor the kind of pump is stated"
 
 
-def line_residence(case: Case) -> float | None:
-    """Time of the oil in pipes and hoses of the suction line [s] at full flow."""
-    flow = pump_flow(case)
-    volume = sum(
-        np.pi / 4.0 * p.bore.value**2 * p.length.value * p.count
-        for p in case.suction_line
-        if p.part in (PartKind.PIPE, PartKind.HOSE) and p.bore and p.length
-    )
-    return float(volume / flow) if flow is not None and volume > 0 and float(flow) > 0 else None
-
-
-def bunsen(case: Case) -> tuple[float, float]:
-    """Bunsen coefficient [-] of the case and its standard uncertainty; measured wins."""
-    given = case.fluid.bunsen_coefficient
-    values = class_values(fluid_class_name(case))
-    if given is not None:
-        return given.value, given.u if given.u is not None else 0.05 * given.value
-    return values.bunsen, values.bunsen * values.bunsen_u
-
-
 def released_in_line(
     case: Case, pressure: FloatArray, temperature: float, draw: dict[str, FloatArray]
 ) -> FloatArray:
@@ -197,8 +178,6 @@ def _state(
     released = released_in_line(case, pressure, temperature, draw)
     viscosities = fluid_viscosities(case)
     nominal = pressure_budget(case, flow, temperature, condition)
-    from rca.physics.viscosity import kinematic_viscosity  # noqa: PLC0415
-
     nu = float(kinematic_viscosity(temperature, *viscosities)) if viscosities else float("nan")
     return InletState(
         temperature=temperature,

@@ -9,7 +9,14 @@ from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.physics.dissolved_air import released_ratio, released_share_in_time
 from rca.records.running import running_bins, standing_bins
-from rca.suction.budget import fluid_viscosities, local_atmosphere, pressure_budget, pump_flow
+from rca.suction.budget import (
+    bunsen,
+    fluid_viscosities,
+    line_residence,
+    local_atmosphere,
+    pressure_budget,
+    pump_flow,
+)
 
 FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
@@ -171,8 +178,6 @@ def _regime(case: Case, aligned: AlignedRecord, mask: Mask, limit: float | None)
 
 
 def _released(case: Case, pressure: float) -> float:
-    from rca.suction.check import bunsen, line_residence  # noqa: PLC0415  mutual by nature
-
     time = line_residence(case) or 1.0
     temperature = case.fluid.temperature.value if case.fluid.temperature else 323.15
     full = released_ratio(

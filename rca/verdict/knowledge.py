@@ -173,8 +173,8 @@ class _Reader:
     def _inside(self, name: str, value: Any) -> float:
         if not isinstance(value, int | float) or not 0.0 < value < 1.0:
             raise KnowledgeError(
-                f"{self.place(name)}: found {value!r}, expected a probability above 0 and below 1; "
-                "nothing is impossible or certain in this trade, so write 0.001 or 0.999"
+                f"{self.place(name)}: found {value!r}; expected a probability above 0 and "
+                "below 1; nothing is impossible or certain in this trade, so write 0.001 or 0.999"
             )
         return float(value)
 

@@ -113,7 +113,7 @@ def weigh(
     base = posterior(knowledge, items)
     sides = base.sides()
     mechanisms = {name: float(base.mechanisms[name][0]) for name in MECHANISMS}
-    groups = len({item.group for item in items if not item.basis.value == "stated"})
+    groups = len({item.group for item in items if item.basis.value != "stated"})
     side, rule = side_of(sides, _others(mechanisms), groups)
     weighed = _weighed(knowledge, items, ids, base)
     prior = posterior(knowledge, [])
@@ -283,9 +283,8 @@ def _causes(
 
 
 def _descendants(knowledge: Knowledge, cause: str) -> set[str]:
-    """The cause's own signs and the conditions it brings about with theirs; no further."""
-    direct = {n for n, v in knowledge.variables.items() if cause in v.leaves}
-    return direct
+    """The conditions, mechanisms and signs that the cause brings about directly."""
+    return {n for n, v in knowledge.variables.items() if cause in v.leaves}
 
 
 def _robustness(

@@ -120,10 +120,10 @@ def _clogged_mesh(rng: np.random.Generator) -> Image.Image:
     for y in range(0, SIZE[1], 14):
         pen.line((0, y, SIZE[0], y), fill=(120, 122, 125), width=5)
     for _ in range(2600):
-        x, y = rng.uniform(0, SIZE[0]), rng.uniform(0, SIZE[1])
+        at, up = rng.uniform(0, SIZE[0]), rng.uniform(0, SIZE[1])
         a, b = rng.uniform(4, 26, 2)
         tone = int(rng.uniform(40, 95))
-        pen.ellipse((x - a, y - b / 3, x + a, y + b / 3), fill=(tone, tone - 8, tone - 20))
+        pen.ellipse((at - a, up - b / 3, at + a, up + b / 3), fill=(tone, tone - 8, tone - 20))
     return image.filter(ImageFilter.GaussianBlur(0.8))
 
 

@@ -70,7 +70,7 @@ def run(seed: int) -> Log:
         inlet_bar=measured,
         discharge_bar=np.maximum(discharge, 0.0),
         oil_degc=temperature + rng.normal(0, 0.15, time.size),
-        speed_rpm=np.round(np.maximum(speed, 0.0), 1),
+        speed_rpm=np.asarray(np.round(np.maximum(speed, 0.0), 1), dtype=np.float64),
         level_m=level,
     )
 

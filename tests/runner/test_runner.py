@@ -113,7 +113,7 @@ def test_parameters_that_do_not_fit_are_refused(tmp_path: Path, given: dict, wor
     ["a = 1", "a: int = open('x')", "a: list = []", "import os", "a: int = 'x'", "a: int ="],
 )
 def test_a_parameters_cell_of_another_shape_is_refused(tmp_path: Path, cell: str) -> None:
-    with pytest.raises(ParameterError, match="parameters cell|declared|literal"):
+    with pytest.raises(ParameterError, match=r"parameters cell|declared|literal"):
         check_notebook(notebook(tmp_path, "1", parameters=cell), {})
 
 
