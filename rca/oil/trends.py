@@ -61,7 +61,7 @@ class Trend:
     first_x: float = 0.0  # [h], where the line begins
     first_y: float | None = None  # on the line
     laboratories: int = 1  # or methods; pairs are compared inside one only
-    laboratory_step: float | None = None  # between the neighbours of the change, less slope
+    laboratory_step: float | None = None  # between the neighbours of the change
     corrected: bool = False  # for top-ups
     outliers: tuple[str, ...] = ()  # sample ids, flagged and kept
     per_1000h_without: float | None = None  # the slope with the flagged results left out
@@ -133,7 +133,7 @@ def _tested(
     else:
         verdict = "no change shown"
     residuals = np.asarray(values) - slope.slope * np.asarray(x)
-    step, centred = _laboratory_step(residuals, groups)
+    step, centred = _laboratory_step(np.asarray(values), residuals, groups)
     apart = _apart(centred, ops, noise)
     return replace(
         base,
@@ -165,12 +165,12 @@ def _slope(
 
 
 def _laboratory_step(
-    residuals: np.ndarray, groups: Sequence[int]
+    values: np.ndarray, residuals: np.ndarray, groups: Sequence[int]
 ) -> tuple[float | None, np.ndarray]:
     """Step of the residuals at the last change of laboratory, and residuals about each level.
 
-    The step is between the neighbours of the change only: a line that bends would otherwise look
-    like a step.
+    The step is between the neighbours of the change, the smaller of with and without the slope:
+    a line that bends would otherwise look like a step.
     """
     labels = np.asarray(groups)
     centred = residuals.astype(float)
@@ -181,7 +181,12 @@ def _laboratory_step(
     if changes.size == 0:
         return None, centred
     last = int(changes[-1])
-    return float(residuals[last + 1] - residuals[last]), centred
+    steps = (
+        float(residuals[last + 1] - residuals[last]),
+        float(values[last + 1] - values[last]),
+    )
+    same_way = steps[0] * steps[1] > 0.0
+    return (min(steps, key=abs) if same_way else 0.0), centred
 
 
 def _apart(centred: np.ndarray, ops: Sequence[str], noise: float) -> tuple[int, ...]:
