@@ -44,6 +44,7 @@ class OilSample:
     retest: int = 0  # 1, 2, ... for repeated tests of one bottle
     top_up: float | None = None  # [m3] added since the sample before, where the report says
     fluid: str = ""
+    asset: str = ""  # where the report names the machine
 
     def get(self, name: str) -> float | None:
         """The number of an uncensored result, else None."""

@@ -20,7 +20,8 @@ def panels_oil(case: Case, check: OilCheck | None) -> Section:
     if check is None:
         return Section(stage="oil", title=TITLE, panels=(_nothing(case),))
     panels = [_latest(check), _combinations(check), _trends(check)]
-    if check.excluded or check.unread or check.undated or check.other_points:
+    left_out = (check.excluded, check.unread, check.undated, check.later)
+    if any(left_out) or check.other_points or check.other_assets:
         panels.append(_left_out(check))
     panels.append(_precision(check))
     return Section(stage="oil", title=TITLE, panels=tuple(panels))
@@ -244,19 +245,22 @@ def _combinations(check: OilCheck) -> Panel:
 
 
 def _trends(check: OilCheck) -> Panel:
-    last = max(t.fill for t in check.trends)
-    of_last = [t for t in check.trends if t.fill == last]
+    of_last = [t for t in check.trends if t.fill == check.fill]
     moving = [t for t in of_last if t.verdict in ("rises", "falls")]
     tested = [t for t in of_last if t.verdict not in ("too few results", "not testable")]
     if moving:
         words = "; ".join(_trend_words(t) for t in moving[:5])
-        answer = f"On the last fill {words}."
+        answer = f"On the fill that failed {words}."
     elif tested:
         answer = (
-            f"On the last fill no trend beyond chance and R is shown in {len(tested)} properties."
+            "On the fill that failed no trend beyond chance and R is shown in "
+            f"{len(tested)} properties."
         )
     else:
-        answer = f"The last fill has too few results for a trend (fewer than {LEAST} a property)."
+        answer = (
+            "The fill that failed has too few results for a trend "
+            f"(fewer than {LEAST} a property)."
+        )
     return Panel(
         key="oil.trends",
         title="Trends over the running hours",
@@ -394,9 +398,12 @@ def _alt(check: OilCheck, shown: tuple[str, ...]) -> str:
 def _left_out(check: OilCheck) -> Panel:
     rows = [("sample", name, f"set aside: {reason}") for name, reason in check.excluded]
     rows += [("sample", name, "no usable day of sampling") for name in check.undated]
+    rows += [("sample", name, "drawn from oil put in after the failure") for name in check.later]
     rows += [
-        ("sample point", name, "shown in the report, not mixed in") for name in check.other_points
+        ("sample point", name, "metals and counts of another point are not mixed in")
+        for name in check.other_points
     ]
+    rows += [("machine", name, "not the machine of this case") for name in check.other_assets]
     rows += [
         (f"{cell.source.file}, {cell.source.locator}", cell.text, cell.reason)
         for cell in check.unread

@@ -207,7 +207,8 @@ class SampleReader:
         return OilSample(
             id=name,
             sampled=self._sampled(row, meta, layout, new=_is_new(meta, name)),
-            point=f"{asset}, {point}" if asset and _many(layout, asset) else point,
+            point=point,
+            asset=asset,
             laboratory=meta("laboratory") or self.report.laboratory or "",
             machine_hours=machine,
             oil_hours=oil,
@@ -322,14 +323,6 @@ def _is_new(meta: Meta, name: str) -> bool:
     known = folded_words("new_oil")
     starts = first.split(" ")[0] if first else ""
     return kind in known or starts in known or bool(_OF_NEW_OIL.search(fold(meta("comment"))))
-
-
-def _many(layout: Layout, asset: str) -> bool:
-    place = layout.meta.get("asset", layout.meta.get("unit"))
-    if place is None:
-        return False
-    seen = {plain_text(row[place].text) for row in layout.body if place < len(row)} - {""}
-    return len(seen) > 1 and asset in seen
 
 
 def _with_code(values: dict[str, OilValue]) -> dict[str, OilValue]:

@@ -1,6 +1,7 @@
 """The oil reports judged: latest sample against limits and new oil, trends of every fill."""
 
-from collections import defaultdict
+import re
+from collections import Counter, defaultdict
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from datetime import date
@@ -15,6 +16,16 @@ from rca.oil.limits import Limit, limits_for, merged, shipped_limits
 from rca.oil.precision import certain, site_precision
 from rca.oil.reference import new_oil_sample, reference_of
 from rca.oil.trends import Row, Trend, trend_of
+
+# what belongs to the whole oil and is the same at every sample point
+DISSOLVED = frozenset(
+    {
+        "viscosity_40", "viscosity_100", "acid_number", "colour", "oxidation", "nitration",
+        "sulfation", "soot", "antioxidant_remaining", "oxidation_life", "patch_colour",
+        "air_release", "foam_tendency", "foam_stability", "flash_point", "conductivity",
+        "Zn", "P", "Ca", "Mg", "Ba", "B", "Mo", "S", "Cl",
+    }
+)  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -38,7 +49,12 @@ class OilCheck:
 
     samples: int
     point: str  # the sample point judged
-    other_points: tuple[str, ...]  # points with fewer samples, listed and not mixed in
+    other_points: tuple[
+        str, ...
+    ]  # points with fewer samples; their metals and counts are left out
+    other_assets: tuple[str, ...]  # machines of the report that are not the one of the case
+    fill: int  # the fill judged: the one in service at the failure, from 0
+    later: tuple[str, ...]  # samples of fills after the failure, not judged
     excluded: tuple[tuple[str, str], ...]  # (sample, reason)
     undated: tuple[str, ...]  # samples without a usable day of sampling
     unread: tuple[UnreadCell, ...]
@@ -68,38 +84,44 @@ def check_oil(
 ) -> OilCheck | None:
     """Judge the oil; None where no usable sample is on record.
 
-    Samples set aside are shown and not judged. Several sample points are never mixed: the point
-    with the most samples is judged.
+    Samples set aside are shown and not judged. Metals, magnetic iron and particle counts are
+    judged at the sample point with the most samples only; what is dissolved in the whole oil is
+    judged from every point. The fill in service at the failure is judged, not one put in later.
     """
     dated = [s for s in samples if s.sampled is not None and not s.new_oil]
     usable = [s for s in dated if not s.excluded]
     if not usable:
         return None
+    usable, other_assets = _of_the_machine(case, usable)
     point, others = _main_point(usable)
-    used = _one_a_bottle(sorted((s for s in usable if s.point == point), key=_when))
+    used = _one_a_bottle(sorted(usable, key=_when))
     life = oil_life(case, used)
-    rows = _rows(used, life)
+    rows = _rows(used, life, point)
+    fill = _fill_that_failed(case, life)
     reference = new_oil_sample(samples)
     limits = merged(shipped_limits(), tuple(site_limits))
     fluid = case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
     trends = _trends(case, rows, reference, life, used)
-    judged = _judged(case, rows, reference, limits, fluid, trends, usable)
-    dark = _darkening(case, rows, reference, life)
-    last = used[-1]
+    judged = _judged(case, rows, fill, reference, limits, fluid, trends, usable)
+    dark = _darkening(case, rows, fill, reference, life)
+    of_fill = [(s, p) for s, p in zip(used, life.places, strict=True) if p.fill == fill]
+    last, place = of_fill[-1]
     failed = case.header.occurred.date() if case.header.occurred is not None else None
-    before = [s for s, p in zip(used, life.places, strict=True) if p.fill == life.places[-1].fill]
     return OilCheck(
         samples=len(samples),
         point=point,
         other_points=others,
+        other_assets=other_assets,
+        fill=fill,
+        later=tuple(s.id for s, p in zip(used, life.places, strict=True) if p.fill > fill),
         excluded=tuple((s.id, s.excluded) for s in samples if s.excluded),
         undated=tuple(s.id for s in samples if s.sampled is None and not s.new_oil),
         unread=tuple(unread),
         latest=last.id,
         latest_date=last.sampled,
-        previous_date=before[-2].sampled if len(before) > 1 else None,
+        previous_date=of_fill[-2][0].sampled if len(of_fill) > 1 else None,
         days_before_failure=(failed - last.sampled).days if failed and last.sampled else None,
-        oil_hours=life.places[-1].oil_hours,
+        oil_hours=place.oil_hours,
         reference=reference.id if reference is not None else "",
         fills=life.days("oil change"),
         laboratory_changes=life.days("laboratory change"),
@@ -108,9 +130,38 @@ def check_oil(
         darkening=dark,
         pictures=pictures_of(judged, dark),
         trends=trends,
-        points=_points(dated, point, life, used),
+        points=_points([s for s in dated if s.asset not in other_assets], point, life, used),
         fluid_class=fluid or "",
     )
+
+
+def _of_the_machine(
+    case: Case, samples: Sequence[OilSample]
+) -> tuple[list[OilSample], tuple[str, ...]]:
+    """The samples of the machine of the case, and the names of the others in the reports."""
+    names = {s.asset for s in samples}
+    if len(names) < 2:
+        return list(samples), ()
+    wanted = _tokens(case.header.asset)
+    fitting = {n for n in names if n and (_tokens(n) <= wanted or wanted <= _tokens(n)) and wanted}
+    counts = Counter(s.asset for s in samples)
+    chosen = fitting or {max(sorted(names), key=lambda name: counts[name])}
+    kept = [s for s in samples if s.asset in chosen or not s.asset]
+    return kept, tuple(sorted(names - chosen - {""}))
+
+
+def _tokens(text: str) -> frozenset[str]:
+    return frozenset(re.findall(r"[a-z0-9]+", text.casefold()))
+
+
+def _fill_that_failed(case: Case, life: OilLife) -> int:
+    """The fill in service at the failure: changes from that day on came after it."""
+    fills = [place.fill for place in life.places]
+    if case.header.occurred is None:
+        return max(fills)
+    day = case.header.occurred.date()
+    then = sum(change < day for change in life.days("oil change"))
+    return max((fill for fill in fills if fill <= then), default=min(fills))
 
 
 def _main_point(samples: Sequence[OilSample]) -> tuple[str, tuple[str, ...]]:
@@ -129,10 +180,14 @@ def _one_a_bottle(samples: Sequence[OilSample]) -> list[OilSample]:
     return list(kept.values())
 
 
-def _rows(used: Sequence[OilSample], life: OilLife) -> dict[tuple[int, str], list[Row]]:
+def _rows(
+    used: Sequence[OilSample], life: OilLife, point: str
+) -> dict[tuple[int, str], list[Row]]:
     rows: dict[tuple[int, str], list[Row]] = defaultdict(list)
     for sample, place in zip(used, life.places, strict=True):
         for name, value in sorted(_with_scale_of_14(sample.values).items()):
+            if sample.point != point and name not in DISSOLVED:
+                continue
             rows[place.fill, name].append(Row(sample=sample, value=value, place=place))
     return rows
 
@@ -174,16 +229,16 @@ def _trends(
 def _judged(
     case: Case,
     rows: dict[tuple[int, str], list[Row]],
+    fill: int,
     reference: OilSample | None,
     limits: tuple[Limit, ...],
     fluid: str | None,
     trends: tuple[Trend, ...],
     usable: Sequence[OilSample],
 ) -> dict[str, Judged]:
-    last_fill = max(fill for fill, _ in rows)
     found = {}
-    for (fill, name), of_property in sorted(rows.items()):
-        if fill != last_fill:
+    for (number, name), of_property in sorted(rows.items()):
+        if number != fill:
             continue
         found[name] = judge(
             name,
@@ -199,10 +254,10 @@ def _judged(
 def _darkening(
     case: Case,
     rows: dict[tuple[int, str], list[Row]],
+    fill: int,
     reference: OilSample | None,
     life: OilLife,
 ) -> Darkening | None:
-    fill = max(number for number, _ in rows)
     colours = rows.get((fill, "colour"), [])
     new = reference_of("colour", case, reference, [row.sample for row in colours])
     changes = life.days("oil change")
@@ -236,8 +291,9 @@ def _points(
             excluded=bool(s.excluded),
         )
         for s in sorted(samples, key=_when)
-        if s.sampled is not None and s.point == point
+        if s.sampled is not None
         for name, v in sorted(s.values.items())
+        if s.point == point or name in DISSOLVED
     )
 
 

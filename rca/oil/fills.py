@@ -3,7 +3,7 @@
 import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from datetime import date, datetime
+from datetime import date, datetime, timedelta
 from itertools import pairwise
 
 from rca.case.model import Case, HistoryEvent
@@ -53,7 +53,10 @@ class OilLife:
 
 
 def oil_life(case: Case, samples: Sequence[OilSample]) -> OilLife:
-    """Fills and stretches of the samples (sorted by day of sampling, new oil left out)."""
+    """Fills and stretches of the samples (sorted by day of sampling, new oil left out).
+
+    A sample drawn on the day of an oil change is taken to be of the old oil.
+    """
     events = [e for row in case.history if (e := _event(row)) is not None]
     events += _changes_by_oil_hours(samples, events)
     events += _laboratories(samples, events)
@@ -74,7 +77,7 @@ def oil_life(case: Case, samples: Sequence[OilSample]) -> OilLife:
     begins = {day: _hours_at(day, samples) for day in changes}
     places = tuple(
         Place(
-            fill=_count(changes, s.sampled),
+            fill=sum(s.sampled is not None and s.sampled > day for day in changes),
             stretch=_count(stretches, s.sampled),
             oil_hours=s.oil_hours if s.oil_hours is not None else _hours_since(s, begins),
         )
@@ -112,7 +115,8 @@ def _changes_by_oil_hours(
             continue
         if not any(one.sampled <= day <= other.sampled for day in known):
             words = f"oil hours fall from {one.oil_hours:g} to {other.oil_hours:g}"
-            found.append(OilEvent(when=other.sampled, kind="oil change", known_from=words))
+            day_before = other.sampled - timedelta(days=1)
+            found.append(OilEvent(when=day_before, kind="oil change", known_from=words))
     return found
 
 

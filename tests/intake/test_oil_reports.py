@@ -231,8 +231,8 @@ def test_16_new_oil_rows():
 
 def test_17_pumps_and_points_stay_apart():
     found = by_id(read("17-several-pumps.csv"))
-    assert found["007"].point == "HPU-3, case drain"
-    assert found["1E5"].point == "HPU-4, tank"
+    assert (found["007"].asset, found["007"].point) == ("HPU-3", "case drain")
+    assert (found["1E5"].asset, found["1E5"].point) == ("HPU-4", "tank")
 
 
 def test_18_marks():

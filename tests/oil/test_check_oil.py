@@ -209,7 +209,8 @@ def test_oil_hours_that_fall_back_show_a_change(oil_case, make_sample, fresh):
         replace(make_sample(k, **fresh), oil_hours=float(h)) for k, h in enumerate(hours, start=1)
     ]
     check = check_oil(oil_case, samples)
-    assert check.fills[-1] == samples[3].sampled
+    assert samples[2].sampled < check.fills[-1] < samples[3].sampled
+    assert check.judged["Fe"].points == 5
     assert any("oil hours fall" in e.known_from for e in check.events)
 
 
@@ -226,7 +227,35 @@ def test_sample_points_are_not_mixed(oil_case, steady, make_sample, fresh):
     check = check_oil(oil_case, (*steady, drain))
     assert check.point == "return line"
     assert check.other_points == ("case drain",)
+    assert check.judged["Fe"].value == 1
+    assert check.judged["Fe"].sample == "26-08"
+    assert check.judged["soot"].sample == "26-09"  # the same in the whole oil
+
+
+def test_machines_are_not_mixed(oil_case, steady, make_sample, fresh):
+    ours = [replace(s, asset="" if s.new_oil else "HPU-3") for s in steady]
+    other = [replace(make_sample(k, **fresh | {"Fe": 90}), asset="HPU-4") for k in range(9, 30)]
+    case = replace(oil_case, header=replace(oil_case.header, asset="HPU-3 pump A"))
+    check = check_oil(case, (*ours, *other))
+    assert check.judged["Fe"].value == 1
+    assert check.other_assets == ("HPU-4",)
+
+
+def test_the_fill_that_failed_is_judged(oil_case, steady, make_sample, fresh):
+    refill = HistoryEvent(
+        when=date(2025, 5, 12),
+        kind="oil change",
+        text="after the failure",
+        source=Source(file="history.csv", locator="line 9"),
+    )
+    case = replace(oil_case, history=(*oil_case.history, refill))
+    bad = make_sample(8, **fresh | {"soot": 6.0})
+    clean = make_sample(9, **fresh)
+    check = check_oil(case, (*steady[:-1], bad, clean))
+    assert clean.sampled > date(2025, 5, 12)
     assert check.latest == "26-08"
+    assert check.judged["soot"].value == 6.0
+    assert check.later == ("26-09",)
 
 
 def test_without_new_oil_the_noise_floor_is_wider(oil_case, steady):
