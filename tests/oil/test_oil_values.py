@@ -314,3 +314,21 @@ def test_mixed_tank():
     assert at == pytest.approx(6.27, abs=5e-3)
     far = mixed_tank(1e6, volume=400.0, make_up=0.12, generation=0.0061, new=1.0)
     assert far == pytest.approx(21.33, abs=5e-3)
+
+
+@pytest.mark.outside_value(source="ASTM D341, worked by hand from 46.0 at 40 and 6.8 at 100 °C")
+@pytest.mark.parametrize(
+    ("celsius", "expected"), [(20, 133.8), (50, 29.97), (60, 20.62), (80, 11.10)]
+)
+def test_viscosity_between_the_laboratorys_two(celsius, expected):
+    from rca.physics.viscosity import kinematic_viscosity
+
+    found = kinematic_viscosity(celsius + 273.15, 46.0e-6, 6.8e-6)
+    assert float(found) * 1e6 == pytest.approx(expected, abs=0.1)
+
+
+@pytest.mark.outside_value(source="1.96 sqrt 2, the 95 % limit of a difference over one sd")
+def test_sd_of_one_result():
+    assert precision("colour", 3.0).R / precision("colour", 3.0).sd == pytest.approx(
+        2.7718, abs=1e-4
+    )
