@@ -114,7 +114,10 @@ def _observed(variable: Variable, likelihood: FloatArray, sound: str, numbers: N
 
     A sign is a leaf, so it is summed out here: the factor is over its parents.
     """
-    flat = np.full_like(likelihood, 1.0) * likelihood.mean(axis=1, keepdims=True)
+    # Likelihoods are scaled to a largest entry of 1, so a void look fits every state as well as
+    # the best one does. That caps the weight of all items of one common cause together at about
+    # 1 / (1 - reliability), whatever their number.
+    flat = np.ones_like(likelihood)
     if variable.kind != "sign":
         table = np.stack([flat, likelihood], axis=1)  # (B, sound, states)
         return Factor((sound, variable.name), table)

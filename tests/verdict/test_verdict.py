@@ -80,11 +80,10 @@ def test_a_single_item_moves_the_odds_of_its_own_cause_as_bayes_says() -> None:
     sound = K.reliability["measured"]
     variable = K.variables[Node.STRAINER_FOUND_CLOGGED.value]
     leak, leaves = variable.anyway.best, variable.leaves["suction strainer clogged"].best
-    flat = (0.1 / 0.9 + 1.0) / 2
 
     def told(present: bool) -> float:
         p = 1 - (1 - leak) * ((1 - leaves) if present else 1.0)
-        return sound * (p + (1 - p) * 0.1 / 0.9) + (1 - sound) * flat
+        return sound * (p + (1 - p) * 0.1 / 0.9) + (1 - sound)
 
     table = joint(factors, ("suction strainer clogged",))[0]
     assert table[1] / table[0] == pytest.approx(told(True) / told(False), rel=1e-9)
@@ -267,3 +266,12 @@ def test_every_node_an_item_may_speak_of_has_the_same_states_everywhere() -> Non
     for node in Node:
         assert node.value in K.variables
         assert len(states_of(node.value)) >= 2
+
+
+def test_one_common_cause_never_weighs_more_than_its_reliability_allows() -> None:
+    nodes = (Node.SOOT, Node.NITRATION, Node.OIL_DARK_FAST, Node.ROUTINE_NORMAL_DARK)
+    sharp = {"no": 0.001, "yes": 0.999}
+    all_in = posterior(K, [item(n, sharp, "one bottle") for n in nodes]).discharge[0]
+    prior = posterior(K, []).discharge[0]
+    factor = (all_in / (1 - all_in)) / (prior / (1 - prior))
+    assert 3.0 < factor < 1.01 / (1 - K.reliability["measured"])
