@@ -3,6 +3,7 @@
 import re
 from dataclasses import dataclass
 from itertools import pairwise
+from math import isfinite
 
 from rca.intake.oil_properties import fold_unit, property_of, unit_factor, words
 
@@ -81,6 +82,8 @@ def parse_result(text: str, decimal: str) -> Parsed | str:
     if isinstance(number, str):
         return number
     value, note = number
+    if not isfinite(value):
+        return "a number too large to be meant"
     written = (match["op"] or "").casefold()
     return Parsed(
         op=_OPERATORS.get(written, "~"),

@@ -2,6 +2,7 @@
 
 import csv
 import io
+import math
 import random
 from datetime import date, timedelta
 from pathlib import Path
@@ -13,8 +14,19 @@ from hypothesis import strategies as st
 
 from rca.base.source import Reading, Source
 from rca.case.model import Case, EvidenceFile, Excluded, Fluid, Header, OilReportFile
-from rca.intake.oil_cells import decimal_mark, parse_code, parse_result
+from rca.evidence.from_oil import from_oil
+from rca.figures.panels_oil import panels_oil
+from rca.intake.oil_cells import (
+    decimal_mark,
+    is_not_tested,
+    parse_code,
+    parse_result,
+    plain_text,
+)
+from rca.intake.oil_layout import is_no_sample, layout_of
 from rca.intake.oil_reports import read_oil_reports
+from rca.intake.tables import read_table
+from rca.oil.check import check_oil
 
 HERE = Path(__file__).parent
 MESSES = HERE / "oil_messes"
@@ -465,3 +477,63 @@ def test_a_table_in_any_dialect_reads_back_equal(
     }
     assert back == known
     assert {s.id: s.sampled for s in reading.samples} == days
+
+
+TITLES = [
+    "Sample No", "Sampled", "Date", "Type", "Machine hours [h]", "Oil hours [d]", "KV40 [cSt]",
+    "TAN", "Water [ppm]", "ISO 4406", "Soot [A/cm]", "Fe", "Cu ppm", "Colour", "Banana", "",
+    "Top-up [L]", "Revision", "Machine", "ISO >4", "ISO >6", "ISO >14", "Flash point [°F]",
+]  # fmt: skip
+ODD = st.one_of(
+    st.sampled_from(
+        ["", "-", "<1", ">100", "1.234", "46,2", "18/16/13", "//", "D8", "=A1", "n.d.", "2026-01-10",
+         "31.02.2026", "99/99/99", "1e400", "-5", "▲", "0.05 %", "NaN", "inf", "1" * 400, "new oil"]
+    ),
+    st.text(max_size=12),
+)  # fmt: skip
+
+
+@pytest.mark.property
+@settings(
+    max_examples=100, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture]
+)
+@given(
+    titles=st.lists(st.sampled_from(TITLES), min_size=3, max_size=10),
+    body=st.lists(st.lists(ODD, min_size=3, max_size=10), min_size=0, max_size=6),
+)
+def test_no_table_makes_the_reader_fall_over(tmp_path, small_case, titles, body):
+    out = io.StringIO()
+    csv.writer(out).writerows([titles, *body])
+    (tmp_path / "t.csv").write_bytes(out.getvalue().encode("utf-8", "replace"))
+    reading = read("t.csv", folder=tmp_path)
+    for sample in reading.samples:
+        for value in sample.values.values():
+            assert math.isfinite(value.value)
+            assert value.op in ("=", "<", ">", "~")
+    check = check_oil(small_case, reading.samples, unread=reading.unread)
+    assert from_oil(small_case, check)
+    assert panels_oil(small_case, check).panels
+
+
+@pytest.mark.parametrize(
+    "name", sorted(p.name for p in MESSES.iterdir() if not p.name.startswith("15"))
+)
+def test_every_result_cell_is_a_value_or_kept_with_its_reason(name):
+    table = read_table(MESSES / name, f"oil_messes/{name}")
+    layout = layout_of(table.rows, {})
+    reading = read(name)
+    used = {v.source.locator: v.text for s in reading.samples for v in s.values.values()}
+    kept = {cell.source.locator for cell in reading.unread}
+    for row in layout.body:
+        if is_no_sample(row, layout):
+            continue
+        places = (
+            [layout.meta["value"]] if layout.kind == "long" else [c.index for c in layout.columns]
+        )
+        for index in places:
+            cell = row[index]
+            three = name.startswith("06b")  # three columns make one code
+            if not is_not_tested(cell.text) and not three:
+                assert cell.address in used or cell.address in kept
+            if cell.address in used and "ISO" not in layout.titles[index]:
+                assert used[cell.address].strip("<> ") in plain_text(cell.text)
