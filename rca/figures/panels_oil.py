@@ -5,7 +5,7 @@ from rca.case.model import Case
 from rca.figures.panels_oil_trends import trends_panel
 from rca.oil.check import OilCheck
 from rca.oil.judge import Judged
-from rca.oil.words import property_name, unit_text
+from rca.oil.words import property_label, property_name, unit_text
 
 TITLE = "Oil analysis"
 ROUTINE_NOTE = (
@@ -43,10 +43,10 @@ def _nothing(case: Case) -> Panel:
 
 
 def _latest(check: OilCheck) -> Panel:
-    beyond = [one for one in check.judged.values() if one.beyond()]
+    beyond = [one for one in _ordered(check) if one.beyond()]
     out = [
         one
-        for one in check.judged.values()
+        for one in sorted(check.judged.values(), key=lambda one: -abs(one.stands_out or 0.0))
         if one.stands_out is not None and abs(one.stands_out) >= 1.0
     ]
     rows = [_latest_row(one) for one in _ordered(check)]
@@ -65,7 +65,6 @@ def _latest(check: OilCheck) -> Panel:
                 columns=(
                     Column(title="Property"),
                     Column(title="Result", numeric=True),
-                    Column(title="Unit"),
                     Column(title="New", numeric=True),
                     Column(title="Change", numeric=True),
                     Column(title="Noise floor", numeric=True),
@@ -117,9 +116,8 @@ def _latest_row(one: Judged) -> tuple[tuple[str, ...], str]:
     else:
         word, mark = "no change shown", ""
     return (
-        property_name(one.property),
+        property_label(one.property, one.unit),
         one.text,
-        unit_text(one.unit),
         f"{one.new:.4g}" if one.new is not None else "–",
         f"{one.change:+.3g}" if one.change is not None else "–",
         f"{one.noise:.2g}",
@@ -261,8 +259,8 @@ def _left_out(check: OilCheck) -> Panel:
         title="What was set aside or could not be read",
         question="Which results carry no weight here, and why?",
         answer=(
-            f"{len(check.excluded)} samples are set aside, {len(check.unread)} cells could not be "
-            f"read, {len(check.undated)} samples have no usable date."
+            f"Samples set aside: {len(check.excluded)}; cells not read: {len(check.unread)}; "
+            f"samples without a usable date: {len(check.undated)}."
         ),
         status="set aside",
         tables=(

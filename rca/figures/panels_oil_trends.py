@@ -10,7 +10,7 @@ from rca.oil.words import property_name, unit_text
 def trends_panel(check: OilCheck) -> Panel:
     """What moved over the life of the oil that failed."""
     of_last = [t for t in check.trends if t.fill == check.fill]
-    moving = [t for t in of_last if t.verdict in ("rises", "falls")]
+    moving = sorted((t for t in of_last if t.verdict in ("rises", "falls")), key=_rank)
     tested = [t for t in of_last if t.verdict not in ("too few results", "not testable")]
     if moving:
         words = "; ".join(_trend_words(t) for t in moving[:5])
@@ -90,7 +90,7 @@ def _trend_paragraphs(check: OilCheck, trends: list[Trend]) -> tuple[str, ...]:
 
 
 def _trend_table(check: OilCheck) -> Table:
-    rows = [_trend_row(t) for t in sorted(check.trends, key=lambda t: (-t.fill, t.property))]
+    rows = [_trend_row(t) for t in sorted(check.trends, key=lambda t: (-t.fill, *_rank(t)))]
     return Table(
         name="oil-trends",
         title="Trends of every fill",
@@ -112,6 +112,16 @@ def _trend_table(check: OilCheck) -> Table:
     )
 
 
+def _rank(trend: Trend) -> tuple[bool, float, str]:
+    """Trends that are shown first, by how far they exceed the noise floor."""
+    over = abs(trend.change or 0.0) / trend.noise if trend.noise else 0.0
+    return trend.verdict not in ("rises", "falls"), -over, trend.property
+
+
+def _near_zero(value: float | None) -> str:
+    return "0" if value is None or abs(value) < 1e-9 else f"{value:.2g}"
+
+
 def _trend_row(t: Trend) -> tuple[str, ...]:
     tested = t.per_1000h is not None and t.low is not None and t.high is not None
     return (
@@ -120,7 +130,7 @@ def _trend_row(t: Trend) -> tuple[str, ...]:
         f"{t.points}" + (f" ({t.limits} limits)" if t.limits else ""),
         t.axis + (", top-ups added back" if t.corrected else ""),
         f"{t.per_1000h:+.2g}" if tested else "–",
-        f"{t.low:.2g} to {t.high:.2g}" if tested else "–",
+        f"{_near_zero(t.low)} to {_near_zero(t.high)}" if tested else "–",
         f"{t.p:.2g}" if t.p is not None else "–",
         f"{t.change:+.2g}" if t.change is not None else "–",
         f"{t.noise:.2g}" if tested else "–",

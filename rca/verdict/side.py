@@ -4,7 +4,7 @@ from collections.abc import Mapping
 
 HELD = 0.75  # a side is held at or above this probability
 OPEN = 0.60  # and the other is left out below this
-CLEAR = 0.35  # below this a side counts as not involved
+CLEAR = 0.40  # below this a side counts as not involved
 OTHER = 0.50  # another mechanism this probable, or ...
 NEITHER = 0.70  # ... neither side this probable, makes "neither"
 LEAST_GROUPS = 2  # groups of evidence that must speak before a side is held
