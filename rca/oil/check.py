@@ -14,7 +14,7 @@ from rca.oil.fills import OilEvent, OilLife, oil_life
 from rca.oil.judge import Judged, judge
 from rca.oil.limits import Limit, limits_for, merged, shipped_limits
 from rca.oil.precision import certain, site_precision
-from rca.oil.reference import new_oil_sample, reference_of
+from rca.oil.reference import new_oil_samples, reference_of
 from rca.oil.trends import Row, Trend, trend_of
 
 # what belongs to the whole oil and is the same at every sample point
@@ -98,14 +98,14 @@ def check_oil(
     life = oil_life(case, used)
     rows = _rows(used, life, point)
     fill = _fill_that_failed(case, life)
-    reference = new_oil_sample(samples)
+    of_fill = [(s, p) for s, p in zip(used, life.places, strict=True) if p.fill == fill]
+    last, place = of_fill[-1]
+    reference = new_oil_samples(samples, last.laboratory)
     limits = merged(shipped_limits(), tuple(site_limits))
     fluid = case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
     trends = _trends(case, rows, reference, life, used)
     judged = _judged(case, rows, fill, reference, limits, fluid, trends, usable)
     dark = _darkening(case, rows, fill, reference, life)
-    of_fill = [(s, p) for s, p in zip(used, life.places, strict=True) if p.fill == fill]
-    last, place = of_fill[-1]
     failed = case.header.occurred.date() if case.header.occurred is not None else None
     return OilCheck(
         samples=len(samples),
@@ -122,7 +122,7 @@ def check_oil(
         previous_date=of_fill[-2][0].sampled if len(of_fill) > 1 else None,
         days_before_failure=(failed - last.sampled).days if failed and last.sampled else None,
         oil_hours=place.oil_hours,
-        reference=reference.id if reference is not None else "",
+        reference=reference[0].id if reference else "",
         fills=life.days("oil change"),
         laboratory_changes=life.days("laboratory change"),
         events=life.events,
@@ -205,7 +205,7 @@ def _with_scale_of_14(values: dict[str, OilValue]) -> dict[str, OilValue]:
 def _trends(
     case: Case,
     rows: dict[tuple[int, str], list[Row]],
-    reference: OilSample | None,
+    reference: Sequence[OilSample],
     life: OilLife,
     used: Sequence[OilSample],
 ) -> tuple[Trend, ...]:
@@ -230,7 +230,7 @@ def _judged(
     case: Case,
     rows: dict[tuple[int, str], list[Row]],
     fill: int,
-    reference: OilSample | None,
+    reference: Sequence[OilSample],
     limits: tuple[Limit, ...],
     fluid: str | None,
     trends: tuple[Trend, ...],
@@ -255,7 +255,7 @@ def _darkening(
     case: Case,
     rows: dict[tuple[int, str], list[Row]],
     fill: int,
-    reference: OilSample | None,
+    reference: Sequence[OilSample],
     life: OilLife,
 ) -> Darkening | None:
     colours = rows.get((fill, "colour"), [])

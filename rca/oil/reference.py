@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from datetime import date
 
 from rca.base.source import Origin
 from rca.case.model import Case
@@ -38,25 +39,30 @@ class Reference:
     text: str  # where it comes from, in words
 
 
-def new_oil_sample(samples: Sequence[OilSample]) -> OilSample | None:
-    """The latest new-oil sample that is not set aside."""
+def new_oil_samples(samples: Sequence[OilSample], laboratory: str) -> tuple[OilSample, ...]:
+    """New-oil samples that are not set aside, the best to compare with first.
+
+    One of the laboratory of the latest used sample comes before the others, then the latest.
+    """
     new = [s for s in samples if s.new_oil and not s.excluded]
-    return new[-1] if new else None
+    new.sort(key=lambda s: (s.laboratory == laboratory, s.sampled or date.min), reverse=True)
+    return tuple(new)
 
 
 def reference_of(
-    name: str, case: Case, new: OilSample | None, fill: Sequence[OilSample]
+    name: str, case: Case, new: Sequence[OilSample], fill: Sequence[OilSample]
 ) -> Reference | None:
-    """What stands for new oil: a new-oil sample, case.toml, the fill's first sample, or a class.
+    """What stands for new oil: a new-oil sample, case.toml, a class, or the fill's first sample.
 
     The first sample of a fill (where there are two or more) errs low: what was lost before it is
     not seen.
     """
-    measured = certain(new.values.get(name)) if new is not None else None
-    if measured is not None and new is not None:
-        return Reference(
-            value=measured, u=0.0, origin=Origin.LABORATORY, text=f"new oil, sample {new.id}"
-        )
+    for one in new:
+        measured = certain(one.values.get(name))
+        if measured is not None:
+            return Reference(
+                value=measured, u=0.0, origin=Origin.LABORATORY, text=f"new oil, sample {one.id}"
+            )
     stated = _stated(name, case)
     if stated is not None:
         return stated

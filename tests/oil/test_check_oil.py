@@ -297,3 +297,13 @@ def test_no_sample_says_so(small_case):
     (panel,) = panels_oil(small_case, None).panels
     assert panel.status == "not assessed"
     assert figures_oil(small_case, None) == {}
+
+
+def test_new_oil_of_the_same_laboratory_is_compared_with(oil_case, steady, make_sample, fresh):
+    other = replace(
+        make_sample(0, new=True, **fresh | {"Zn": 700}), id="OTHER", laboratory="lab B"
+    )
+    dated = replace(other, sampled=date(2025, 4, 1))
+    check = check_oil(oil_case, (*steady, dated))
+    assert check.reference == "NEW"
+    assert check.judged["Zn"].new == 400
