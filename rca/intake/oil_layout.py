@@ -19,6 +19,7 @@ from rca.intake.tables import Cell
 Rows = Sequence[tuple[Cell, ...]]
 HEAD_WITHIN = 30  # rows of logos and addresses before the heading
 LEAST_KNOWN = 3
+MOST_HEADS = 4  # rows of heading: names, temperatures, units, methods
 MOST_LYING = 400  # tests down the page; longer tables are upright
 
 
@@ -90,9 +91,10 @@ def _layout(
         elif name is None:
             unknown.append((index, title))
     if kind == "transposed" and "id" not in meta:
-        meta["id"] = 0
-        unknown = [one for one in unknown if one[0] != 0]
-        columns = [one for one in columns if one.index != 0]
+        named = (i for i, title in enumerate(titles) if meta_of(title.split(" [")[0]) == "test")
+        meta["id"] = next(named, 0)
+        unknown = [one for one in unknown if one[0] != meta["id"]]
+        columns = [one for one in columns if one.index != meta["id"]]
     return Layout(
         kind=kind,
         meta=meta,
@@ -120,12 +122,15 @@ def _best_head(
         known = _known(titles, stated)
         if best is None or known > best[2]:
             best = (start, titles, known, 1)
-        if start + 1 < len(rows) and _is_heading_row(rows[start + 1]):
-            joined = _joined(titles, rows[start + 1])
+        joined = titles
+        for depth, following in enumerate(rows[start + 1 : start + MOST_HEADS], start=2):
+            if not _is_heading_row(following):
+                break
+            joined = _joined(joined, following)
             more = _known(joined, stated)
-            if more > best[2] or (more == best[2] and best[0] == start and best[3] == 1):
-                best = (start, joined, more, 2)
-    if best is None or best[2] < LEAST_KNOWN:
+            if more > best[2] or (more == best[2] and best[0] == start):
+                best = (start, joined, more, depth)
+    if best is None or best[2] < 2 * LEAST_KNOWN:
         return None
     return best
 
@@ -154,6 +159,9 @@ def _with_second(above: str, below: str) -> str:
     heading = heading_of(above)
     if heading is not None and not heading.unit:
         fits = unit_factor(heading.name, bare) is not None or bare.casefold() in ("mg/l", "°f")
+        both = heading_of(f"{above} {below}")
+        if both is not None and both.name == heading.name and both.method:
+            return f"{above} {below}"
         return f"{above} [{bare}]" if fits and bare not in ("", "-") else above
     if meta_of(f"{above} {below}") is not None:
         return f"{above} {below}"
@@ -174,14 +182,15 @@ def _is_heading_row(row: tuple[Cell, ...]) -> bool:
 
 
 def _known(titles: tuple[str, ...], stated: Mapping[str, str]) -> int:
-    return sum(
-        bool(
-            title
-            and len(title) < 80
-            and (_stated(title, stated) or heading_of(title) or meta_of(title))
-        )
-        for title in titles
-    )
+    """How well a heading is understood: 2 for each known title, 1 more where it has a unit."""
+    score = 0
+    for title in titles:
+        if not title or len(title) >= 80:
+            continue
+        heading = heading_of(title)
+        if heading is not None or meta_of(title) is not None or _stated(title, stated):
+            score += 2 + bool(heading is not None and heading.unit)
+    return score
 
 
 def _is_long(titles: Sequence[str]) -> bool:

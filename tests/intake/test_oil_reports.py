@@ -271,6 +271,15 @@ def test_19_layouts():
     assert turned["26-02"].values["Fe"].source.locator == "line 6, column 4"
 
 
+def test_19_transposed_with_method_and_limit_columns():
+    found = by_id(read("19d-transposed-with-method-and-limit.csv"))
+    assert set(found) == {"26-01", "26-02"}
+    assert found["26-02"].get("viscosity_40") == 46.3
+    assert found["26-02"].get("oxidation") == pytest.approx(5.0)  # A/0.1 mm to A/cm
+    assert found["26-01"].values["Fe"].op == "<"
+    assert found["26-01"].values["acid_number"].method == "ASTM D664"
+
+
 def test_20_the_method_is_kept():
     found = by_id(read("20-method-changed.csv"))
     assert found["a"].values["acid_number"].method == "D974"
