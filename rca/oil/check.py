@@ -101,26 +101,26 @@ def check_oil(
     of_fill = [(s, p) for s, p in zip(used, life.places, strict=True) if p.fill == fill]
     last, place = of_fill[-1]
     reference = new_oil_samples(samples, last.laboratory)
+    shown = [s for s in dated if s.asset not in other_assets]
     limits = merged(shipped_limits(), tuple(site_limits))
-    fluid = case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
+    fluid = _fluid_class(case)
     trends = _trends(case, rows, reference, life, used)
     judged = _judged(case, rows, fill, reference, limits, fluid, trends, usable)
     dark = _darkening(case, rows, fill, reference, life)
-    failed = case.header.occurred.date() if case.header.occurred is not None else None
     return OilCheck(
         samples=len(samples),
         point=point,
         other_points=others,
         other_assets=other_assets,
         fill=fill,
-        later=tuple(s.id for s, p in zip(used, life.places, strict=True) if p.fill > fill),
+        later=_later(used, life, fill),
         excluded=tuple((s.id, s.excluded) for s in samples if s.excluded),
         undated=tuple(s.id for s in samples if s.sampled is None and not s.new_oil),
         unread=tuple(unread),
         latest=last.id,
         latest_date=last.sampled,
         previous_date=of_fill[-2][0].sampled if len(of_fill) > 1 else None,
-        days_before_failure=(failed - last.sampled).days if failed and last.sampled else None,
+        days_before_failure=_days_before(case, last.sampled),
         oil_hours=place.oil_hours,
         reference=reference[0].id if reference else "",
         fills=life.days("oil change"),
@@ -130,9 +130,25 @@ def check_oil(
         darkening=dark,
         pictures=pictures_of(judged, dark),
         trends=trends,
-        points=_points([s for s in dated if s.asset not in other_assets], point, life, used),
+        points=_points(shown, point, life, used),
         fluid_class=fluid or "",
     )
+
+
+def _days_before(case: Case, sampled: date | None) -> int | None:
+    """Days from a sample to the failure; negative where it was drawn after it."""
+    if case.header.occurred is None or sampled is None:
+        return None
+    return (case.header.occurred.date() - sampled).days
+
+
+def _fluid_class(case: Case) -> str | None:
+    return case.fluid.fluid_class.value if case.fluid.fluid_class is not None else None
+
+
+def _later(used: Sequence[OilSample], life: OilLife, fill: int) -> tuple[str, ...]:
+    """Samples of oil put in after the failure."""
+    return tuple(s.id for s, p in zip(used, life.places, strict=True) if p.fill > fill)
 
 
 def _of_the_machine(

@@ -44,7 +44,7 @@ def mann_kendall(
     split off first; serial correlation makes p too small.
 
     Source: R. O. Gilbert, Statistical Methods for Environmental Pollution Monitoring, 1987,
-    ch. 16; groups as D. P. van Belle and J. P. Hughes, Water Resour. Res. 20 (1984) 127.
+    ch. 16; groups as G. van Belle and J. P. Hughes, Water Resour. Res. 20 (1984) 127.
     Raises OutOfRangeError for fewer than 3 points, NaN or an unknown operator.
     """
     x, marks = checked(values, ops)
