@@ -1,9 +1,11 @@
 """Teardown findings as typed observations by side; contradictions listed, absences kept."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from difflib import get_close_matches
 
 from rca.case.model import Case, Finding
-from rca.case.vocabulary import Extent, Side, Sign
+from rca.case.vocabulary import ZONES, Extent, Side, Sign
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -64,12 +66,19 @@ def check_damage(case: Case) -> DamageCheck:
 
 def _reason(finding: Finding) -> str:
     if finding.sign is None:
-        return f"the sign {finding.sign_text!r} is not in the vocabulary"
+        near = _nearest(finding.sign_text, [s.value for s in Sign])
+        return f"the sign {finding.sign_text!r} is not in the vocabulary{near}"
     if finding.side is None:
-        return f"the zone {finding.zone!r} is not in the vocabulary"
+        near = _nearest(finding.zone, ZONES)
+        return f"the zone {finding.zone!r} is not in the vocabulary{near}"
     if finding.extent is None:
         return "no extent is stated"
     return ""
+
+
+def _nearest(word: str, known: Sequence[str]) -> str:
+    close = get_close_matches(word.casefold().strip(), known, n=3, cutoff=0.5)
+    return f"; nearest known: {', '.join(close)}" if close else ""
 
 
 def _observation(finding: Finding) -> Observation:
@@ -113,11 +122,27 @@ def _against_each_other(observations: tuple[Observation, ...]) -> list[str]:
 
 def _against_photos(case: Case, observations: tuple[Observation, ...]) -> list[str]:
     zones = {p.file.removeprefix("photos/"): p.zone.casefold() for p in case.photos}
-    words = []
+    words = _same_picture(case)
     for one in observations:
-        shown = zones.get(one.photo.removeprefix("photos/"), "")
+        name = one.photo.removeprefix("photos/")
+        shown = zones.get(name, "")
+        if name and name not in zones:
+            words.append(f"{one.id}: its photograph {one.photo} is not in the case folder")
         if shown and shown != one.zone:
             words.append(
                 f"{one.id}: found at {one.zone}, its photograph {one.photo} is of {shown}"
             )
+    return words
+
+
+def _same_picture(case: Case) -> list[str]:
+    """Photographs with the same bytes under two names: one picture is one look, not two."""
+    first: dict[str, str] = {}
+    words = []
+    for photo in case.photos:
+        digest = photo.source.sha256
+        if digest and digest in first:
+            words.append(f"{photo.file} and {first[digest]} are the same picture byte for byte")
+        if digest:
+            first.setdefault(digest, photo.file)
     return words

@@ -1,6 +1,6 @@
 """Evidence from the teardown: which sign in which zone speaks of which node of the network."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from rca.base.source import Source
 from rca.case.vocabulary import Extent, Sign
@@ -80,7 +80,15 @@ _PRESENT = {
     Extent.MODERATE: (0.75, 0.05),
     Extent.SEVERE: (0.90, 0.02),
 }
-_ABSENT = (0.25, 0.92)  # P(reported absent | present), P(reported absent | absent)
+_ABSENT_IF_ABSENT = 0.92
+# P(reported absent | present) by the number of the rule's zones looked at: one zone looked at
+# says little about the others; judgement
+_MISSED = (0.50, 0.35, 0.25)
+_WHOLE = {"valve plate", "cylinder block", "housing"}  # a part named as a whole does not say where
+_PLACED = (Node.PITTING_TRANSITION, Node.CHAR_DISCHARGE)  # nodes that ask where
+# milky is air or water; the sign alone does not say whether it clears, so an emulsion (or not
+# milky for long) reports the same; judgement
+_MILKY_OTHERWISE = 0.20
 
 
 def from_damage(check: DamageCheck) -> tuple[EvidenceItem | NotAssessed, ...]:
@@ -115,7 +123,14 @@ def _unseen(rule: _Rule) -> NotAssessed:
 def _item(rule: _Rule, observations: list[Observation], *, absent: bool) -> EvidenceItem:
     order = [Extent.NONE, Extent.SLIGHT, Extent.MODERATE, Extent.SEVERE]
     strongest = max(observations, key=lambda o: order.index(o.extent))
-    yes, no = _ABSENT if absent else _PRESENT[strongest.extent]
+    if absent:
+        zones = len({o.zone for o in observations})
+        single = len(rule.zones) == 1
+        yes, no = _MISSED[2 if single else min(zones, 3) - 1], _ABSENT_IF_ABSENT
+    else:
+        yes, no = _PRESENT[strongest.extent]
+        if rule.node in _PLACED and all(o.zone in _WHOLE for o in observations):
+            no = max(no, yes / 3)
     listed = "; ".join(
         f"{o.id}: {o.sign.value}, {o.extent.value}, {o.zone}" for o in observations[:4]
     )
@@ -143,7 +158,11 @@ def _milky(check: DamageCheck) -> EvidenceItem | NotAssessed:
         )
     rule = _Rule(Node.MILKY_CLEARS, (Sign.MILKY_OIL,), (), Group.SOUND)
     found = [o for o in seen if o.extent is not Extent.NONE]
-    return _item(rule, found or seen, absent=not found)
+    item = _item(rule, found or seen, absent=not found)
+    if not found:
+        return item
+    otherwise = max(item.likelihood["no"], _MILKY_OTHERWISE)
+    return replace(item, likelihood={**item.likelihood, "no": otherwise})
 
 
 def _nothing(check: DamageCheck) -> EvidenceItem | NotAssessed:

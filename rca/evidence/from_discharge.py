@@ -43,7 +43,8 @@ def _bounded(share: float, low: float, high: float) -> float:
 
 
 def _sources(*readings: Reading | None) -> tuple[Source, ...]:
-    return tuple(dict.fromkeys(r.source for r in readings if r is not None and r.source))
+    known = tuple(dict.fromkeys(r.source for r in readings if r is not None and r.source))
+    return known or (Source(file="case.toml", locator="pump and fluid, as far as described"),)
 
 
 def _hot(case: Case, check: DischargeCheck) -> EvidenceItem | NotAssessed:

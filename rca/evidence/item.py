@@ -141,6 +141,12 @@ class EvidenceItem:
     limit: Reading | None = None
     absent: bool = False  # looked for and not found
 
+    def __post_init__(self) -> None:
+        if not self.sources:
+            raise ValueError(f"evidence item {self.key!r} names no source")
+        if not all(0.0 < p <= 1.0 for p in self.likelihood.values()):
+            raise ValueError(f"evidence item {self.key!r} has a likelihood outside (0, 1]")
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class NotAssessed:
