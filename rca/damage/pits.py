@@ -22,6 +22,8 @@ SMALLEST_REGION_PX = 400
 SHARES = (0.35, 0.5, 0.65)  # of the typical depth
 SEED_SIGMAS = 5.0  # darker than the plate by this many robust deviations counts as dark
 SMALLEST_PIT_PX = 4.0  # equivalent diameter; smaller spots are not told from grain
+MOST_UNEVEN = 3.0  # plate deviation against pixel-to-pixel grain; judgement
+MOST_DARK = 0.45  # of the region; judgement
 _BREADTH = 1.4826  # median absolute deviation to standard deviation of a normal law
 _SCALE = re.compile(r"^\s*(\d+(?:[.,]\d+)?)\s*px\s*/\s*mm\s*$", re.IGNORECASE)
 
@@ -68,7 +70,8 @@ def measure_pits(
     ------
     OutOfRangeError
         The picture is no plane of finite numbers, the region is too small or of another shape,
-        or the scale is not positive.
+        the scale is not positive, or the region is not mostly one evenly lit surface (a port,
+        an edge or a shadow inside it): a background can't be told from pits then.
 
     """
     picture = np.asarray(grey, dtype=np.float64)
@@ -78,6 +81,7 @@ def measure_pits(
             f"a scale of {px_per_m} px/m with uncertainty {u_px_per_m}; it has to be positive"
         )
     depth, sigma = _depth(picture, marked)
+    _even_plate(picture, marked, depth, sigma)
     looks = [_look(depth, sigma, marked, share) for share in SHARES]
     low, middle, high = looks
     sizes = np.sort(middle.diameters) / px_per_m
@@ -184,6 +188,21 @@ def _depth(picture: FloatArray, marked: BoolArray) -> tuple[FloatArray, float]:
         sigma = _BREADTH * float(np.median(np.abs(depth[kept] - middle)))
         kept = marked & (depth - middle < 3.0 * max(sigma, 1e-9))
     return depth, sigma
+
+
+def _even_plate(picture: FloatArray, marked: BoolArray, depth: FloatArray, sigma: float) -> None:
+    """Refuse a region whose plate is no plate: rough far beyond its grain, or mostly dark."""
+    grain = max(
+        _BREADTH * float(np.median(np.abs(np.diff(picture, axis=axis)))) / np.sqrt(2.0)
+        for axis in (0, 1)
+    )
+    span = float(np.ptp(picture[marked]))
+    dark = float((depth[marked] > 0.2 * span).mean()) if span > 0 else 0.0
+    if sigma > max(MOST_UNEVEN * grain, 0.05 * span) or dark > MOST_DARK:
+        raise OutOfRangeError(
+            f"a region that is not mostly one evenly lit surface (deviation {sigma:.3g} against a "
+            f"grain of {grain:.3g}; {dark:.0%} dark, at most {MOST_DARK:.0%}); mark a smaller one"
+        )
 
 
 def _look(depth: FloatArray, sigma: float, marked: BoolArray, share: float) -> _Look:

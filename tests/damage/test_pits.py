@@ -88,6 +88,13 @@ def test_what_cannot_be_measured_is_refused(grey: npt.NDArray[np.float64], scale
         measure_pits(grey, px_per_m=scale)
 
 
+def test_a_region_across_a_port_is_refused() -> None:
+    picture = plate(np.full(16, 10.0))
+    picture[:, :110] -= 110.0  # a dark port under nearly half of the region
+    with pytest.raises(OutOfRangeError, match="evenly lit"):
+        measure_pits(picture, px_per_m=PX_PER_M)
+
+
 def test_scales() -> None:
     assert scale_stated("12.5 px/mm") == pytest.approx(12.5e3)
     assert scale_stated("12,5 px/mm") == pytest.approx(12.5e3)
