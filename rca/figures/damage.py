@@ -13,6 +13,7 @@ from rca.case.vocabulary import Extent, PumpKind, Side
 from rca.damage.check import DamageCheck, Observation
 from rca.figures.style import DISCHARGE, GREY, INK, NEITHER, PALE, SUCTION, new_figure
 
+MOST_FIELDS = 14
 ORDER = [Extent.NONE, Extent.SLIGHT, Extent.MODERATE, Extent.SEVERE]
 HATCH = {Extent.SLIGHT: "..", Extent.MODERATE: "///", Extent.SEVERE: "xxx"}
 SIDE_COLOUR = {Side.INLET: SUCTION, Side.DISCHARGE: DISCHARGE, Side.NEITHER: NEITHER}
@@ -172,7 +173,16 @@ _FACES: dict[PumpKind, Callable[[Axes, dict[str, Observation]], set[str]]] = {
 def _fields(axes: Axes, worst: dict[str, Observation]) -> None:
     """The zones outside the drawn face, one field each, by side."""
     axes.axis("off")
-    rows = sorted(worst.items(), key=lambda kv: (kv[1].side.value, kv[0]))[:14]
+    every = sorted(worst.items(), key=lambda kv: (kv[1].side.value, kv[0]))
+    rows = every[:MOST_FIELDS]
+    if len(every) > len(rows):
+        axes.text(
+            0.8,
+            -len(rows),
+            f"and {len(every) - len(rows)} more zones, in the table",
+            va="center",
+            fontsize=7.5,
+        )
     for place, (zone, one) in enumerate(rows):
         y = -place
         axes.add_patch(
@@ -189,7 +199,7 @@ def _fields(axes: Axes, worst: dict[str, Observation]) -> None:
             fontsize=7.5,
         )
     axes.set_xlim(-0.1, 6.0)
-    axes.set_ylim(-max(len(rows), 8) - 1.2, 0.8)
+    axes.set_ylim(-max(len(every[: MOST_FIELDS + 1]), 8) - 1.2, 0.8)
     handles = [
         Patch(facecolor="white", edgecolor=INK, hatch=HATCH[e], label=e.value)
         for e in (Extent.SLIGHT, Extent.MODERATE, Extent.SEVERE)
