@@ -354,7 +354,6 @@ def _record(results: Mapping[str, Any]) -> tuple[tuple[str, str], ...]:
         ("Program code, SHA-256", record["code"][:32]),
     ]
     rows += [(name, number) for name, number in sorted(record["versions"].items())]
-    rows += [(name, digest[:16]) for name, digest in sorted(record["notebooks"].items())]
     return tuple(rows)
 
 

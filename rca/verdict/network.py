@@ -114,10 +114,9 @@ def _observed(variable: Variable, likelihood: FloatArray, sound: str, numbers: N
 
     A sign is a leaf, so it is summed out here: the factor is over its parents.
     """
-    # Likelihoods are scaled to a largest entry of 1, so a void look fits every state as well as
-    # the best one does. That caps the weight of all items of one common cause together at about
-    # 1 / (1 - reliability), whatever their number.
-    flat = np.ones_like(likelihood)
+    # A void look says either thing at random: P'(E|H) = r P(E|H) + (1 - r) q with q the mean over
+    # the states. Giving it more would let it win against many sound looks by their number alone.
+    flat = np.ones_like(likelihood) * likelihood.mean(axis=1, keepdims=True)
     if variable.kind != "sign":
         table = np.stack([flat, likelihood], axis=1)  # (B, sound, states)
         return Factor((sound, variable.name), table)
