@@ -7,6 +7,15 @@ from difflib import get_close_matches
 from rca.case.model import Case, Finding
 from rca.case.vocabulary import ZONES, Extent, Side, Sign
 
+# zones that one picture can show at once
+SEEN_TOGETHER = (
+    {"valve plate", "inlet kidney", "transition land", "discharge kidney"},
+    {"cylinder block", "cylinder bore"},
+    {"cylinder", "piston seal"},
+    {"slipper", "swash plate"},
+    {"cam ring", "vane tip"},
+)
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Observation:
@@ -128,7 +137,8 @@ def _against_photos(case: Case, observations: tuple[Observation, ...]) -> list[s
         shown = zones.get(name, "")
         if name and name not in zones:
             words.append(f"{one.id}: its photograph {one.photo} is not in the case folder")
-        if shown and shown != one.zone:
+        together = any(shown in group and one.zone in group for group in SEEN_TOGETHER)
+        if shown and shown != one.zone and not together:
             words.append(
                 f"{one.id}: found at {one.zone}, its photograph {one.photo} is of {shown}"
             )

@@ -84,6 +84,17 @@ _ABSENT_IF_ABSENT = 0.92
 # P(reported absent | present) by the number of the rule's zones looked at: one zone looked at
 # says little about the others; judgement
 _MISSED = (0.50, 0.35, 0.25)
+# where a sign shows first: a look there misses as little as three looks elsewhere; common
+# practice, no source
+_TELLING: dict[Node, tuple[str, ...]] = {
+    Node.PITTING_TRANSITION: ("transition land",),
+    Node.EDGE_EROSION: ("transition land", "discharge kidney", "valve plate"),
+    Node.CHAR_DISCHARGE: ("piston seal",),
+    Node.SPARK_MARKS: FILTERS,
+    Node.FILTER_SCORCHED: FILTERS,
+    Node.FOAM: ("reservoir",),
+    Node.MILKY_CLEARS: ("reservoir",),
+}
 _WHOLE = {"valve plate", "cylinder block", "housing"}  # a part named as a whole does not say where
 _PLACED = (Node.PITTING_TRANSITION, Node.CHAR_DISCHARGE)  # nodes that ask where
 # milky is air or water; the sign alone does not say whether it clears, so an emulsion (or not
@@ -124,15 +135,18 @@ def _item(rule: _Rule, observations: list[Observation], *, absent: bool) -> Evid
     order = [Extent.NONE, Extent.SLIGHT, Extent.MODERATE, Extent.SEVERE]
     strongest = max(observations, key=lambda o: order.index(o.extent))
     if absent:
-        zones = len({o.zone for o in observations})
-        single = len(rule.zones) == 1
-        yes, no = _MISSED[2 if single else min(zones, 3) - 1], _ABSENT_IF_ABSENT
+        zones = {o.zone for o in observations}
+        told = bool(zones & set(_TELLING.get(rule.node, ())))
+        yes, no = _MISSED[2 if told else min(len(zones), 3) - 1], _ABSENT_IF_ABSENT
     else:
         yes, no = _PRESENT[strongest.extent]
         if rule.node in _PLACED and all(o.zone in _WHOLE for o in observations):
             no = max(no, yes / 3)
     listed = "; ".join(
-        f"{o.id}: {o.sign.value}, {o.extent.value}, {o.zone}" for o in observations[:4]
+        f"{o.id}: {o.sign.value}, {o.zone}"
+        if absent
+        else f"{o.id}: {o.sign.value}, {o.extent.value}, {o.zone}"
+        for o in observations[:4]
     )
     words = "Looked for and absent" if absent else "Found"
     return EvidenceItem(
@@ -181,4 +195,10 @@ def _nothing(check: DamageCheck) -> EvidenceItem | NotAssessed:
             key="damage.no_damage", node=Node.NO_DAMAGE, missing="a teardown of the pump"
         )
     rule = _Rule(Node.NO_DAMAGE, (Sign.NO_DAMAGE,), ())
-    return _item(rule, hurt[:1] or clean, absent=bool(hurt))
+    if not hurt:
+        return _item(rule, clean, absent=False)
+    # the found signs weigh by themselves; this only says that "nothing was found" does not hold
+    clear = any(o.extent is not Extent.SLIGHT for o in hurt)
+    item = _item(rule, hurt, absent=False)
+    likelihood = {"no": _ABSENT_IF_ABSENT, "yes": _MISSED[2] if clear else _MISSED[0]}
+    return replace(item, likelihood=likelihood, absent=True)

@@ -95,13 +95,13 @@ def test_contradictions_are_listed(small_case: Case) -> None:
             finding("3", "piston seal", "charred seal", photo="lost.jpg"),
         ),
         photos=(
-            photo("photos/a.jpg", "discharge kidney", "d1"),
+            photo("photos/a.jpg", "swash plate", "d1"),
             photo("photos/b.jpg", "inlet kidney", "d1"),
         ),
     )
     words = "\n".join(check_damage(case).contradictions)
     assert "both found and looked for" in words
-    assert "a.jpg is of discharge kidney" in words
+    assert "a.jpg is of swash plate" in words
     assert "lost.jpg is not in the case folder" in words
     assert "same picture byte for byte" in words
 
@@ -135,7 +135,7 @@ def test_more_extent_weighs_more_and_more_looks_miss_less(small_case: Case) -> N
     three = with_findings(
         small_case,
         finding("1", "servo valve", "burn mark", "none"),
-        finding("2", "piston seal", "charred seal", "none"),
+        finding("2", "relief valve", "burn mark", "none"),
         finding("3", "discharge kidney", "burn mark", "none"),
     )
     assert ratio(items(three)[Node.CHAR_DISCHARGE]) < ratio(items(one)[Node.CHAR_DISCHARGE]) < 1
@@ -175,6 +175,30 @@ def test_every_pump_kind_is_drawn_and_every_finding_is_in_the_table(
     assert set(figures) == {f.name for p in panels_damage(check).panels for f in p.figures}
     rows = panels_damage(check).panels[0].tables[0].rows
     assert [r[0] for r in rows] == [f.id for f in findings]
+
+
+def test_a_look_where_the_sign_shows_first_misses_less(small_case: Case) -> None:
+    seal = items(with_findings(small_case, finding("1", "piston seal", "charred seal", "none")))
+    valve = items(with_findings(small_case, finding("1", "servo valve", "burn mark", "none")))
+    assert ratio(seal[Node.CHAR_DISCHARGE]) < ratio(valve[Node.CHAR_DISCHARGE]) < 1
+
+
+def test_found_damage_is_said_as_found(small_case: Case) -> None:
+    one = items(with_findings(small_case, finding("1", "inlet kidney", "pitting", "severe")))
+    nothing = one[Node.NO_DAMAGE]
+    assert isinstance(nothing, EvidenceItem)
+    assert nothing.statement.startswith("Found: 1: pitting, severe")
+    assert ratio(nothing) < 1
+    clean = items(with_findings(small_case, finding("1", "valve plate", "no damage", "severe")))
+    assert ratio(clean[Node.NO_DAMAGE]) > 1
+
+
+def test_a_picture_of_the_plate_may_show_its_kidney(small_case: Case) -> None:
+    case = replace(
+        with_findings(small_case, finding("1", "inlet kidney", "pitting", photo="a.jpg")),
+        photos=(photo("photos/a.jpg", "valve plate", "d1"),),
+    )
+    assert check_damage(case).contradictions == ()
 
 
 def test_no_findings_is_said(small_case: Case) -> None:
