@@ -31,6 +31,7 @@ from rca.base.panel import Section
 from rca.base.units import QUANTITY_DIMENSIONS, parse_quantity
 from rca.case.model import Case, Gap
 from rca.case.series import AlignedRecord, FloatArray
+from rca.case.site import local_atmosphere
 from rca.damage.check import DamageCheck, check_damage
 from rca.discharge.check import check_discharge
 from rca.discharge.model import DischargeCheck
@@ -62,7 +63,6 @@ from rca.intake.record_files import RecordReading, read_records
 from rca.oil.check import check_oil
 from rca.records.bursts import BurstFinding, burst_finding
 from rca.records.check import RecordCheck, check_records, usable
-from rca.suction.budget import local_atmosphere
 from rca.suction.check import SuctionCheck, check_suction, inlet_limit
 from rca.verdict.knowledge import shipped_knowledge
 from rca.verdict.model import VerdictCheck

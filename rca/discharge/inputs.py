@@ -8,13 +8,14 @@ import numpy.typing as npt
 
 from rca.base.source import Origin, Reading
 from rca.case.model import Case
+from rca.case.site import local_atmosphere
 from rca.case.vocabulary import PumpKind
 from rca.discharge.model import RiseTime, Spread
 from rca.physics.bubble import OilSide
 from rca.physics.collapse import ramp_time
 from rca.physics.fluid_class import class_values, density
 from rca.physics.viscosity import kinematic_viscosity
-from rca.suction.budget import fluid_class_name, fluid_viscosities, local_atmosphere
+from rca.suction.budget import fluid_class_name, fluid_viscosities
 
 if TYPE_CHECKING:  # its module loads scipy.signal, which nothing here needs
     from rca.records.bursts import BurstFinding

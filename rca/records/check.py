@@ -7,6 +7,7 @@ import numpy.typing as npt
 
 from rca.case.model import Case
 from rca.case.series import AlignedRecord, FloatArray, Series
+from rca.case.site import local_atmosphere
 from rca.records.bursts import BurstFinding
 from rca.records.running import running_bins, standing_bins
 
@@ -200,7 +201,7 @@ def _remarks(
         level = case.reservoir.level_above_inlet
         if rest.sum() >= 20 and level is not None:
             offset = float(np.median(series.mean[rest])) - (
-                _air(case) + 860.0 * 9.80665 * level.value
+                local_atmosphere(case) + 860.0 * 9.80665 * level.value
             )
             if abs(offset) > 0.03e5:
                 aside = abs(offset) > 0.5e5
@@ -208,14 +209,6 @@ def _remarks(
                     (f"reads {offset / 1e5:+.3f} bar against air and head at standstill", aside)
                 )
     return found
-
-
-def _air(case: Case) -> float:
-    from rca.physics.atmosphere import standard_atmosphere  # noqa: PLC0415
-
-    if case.header.ambient_pressure is not None:
-        return case.header.ambient_pressure.value
-    return float(standard_atmosphere(case.header.altitude.value if case.header.altitude else 0.0))
 
 
 def _longest_same(values: FloatArray, running: Mask) -> int:

@@ -6,8 +6,8 @@ import numpy as np
 import numpy.typing as npt
 
 from rca.case.model import Case, SuctionPart
+from rca.case.site import local_atmosphere
 from rca.case.vocabulary import PartKind
-from rca.physics.atmosphere import standard_atmosphere
 from rca.physics.fluid_class import class_values, density
 from rca.physics.line_losses import (
     breather_loss,
@@ -64,14 +64,6 @@ def fluid_viscosities(case: Case) -> tuple[float, float] | None:
 def fluid_class_name(case: Case) -> str:
     """The class of the fluid; mineral where the case does not say."""
     return case.fluid.fluid_class.value if case.fluid.fluid_class is not None else "mineral"
-
-
-def local_atmosphere(case: Case) -> float:
-    """Air pressure at the site [Pa]: as given, else by its altitude, else sea level."""
-    if case.header.ambient_pressure is not None:
-        return case.header.ambient_pressure.value
-    altitude = case.header.altitude.value if case.header.altitude is not None else 0.0
-    return float(standard_atmosphere(altitude))
 
 
 def oil_density(case: Case, temperature: float) -> float:

@@ -8,6 +8,7 @@ from scipy.stats import norm, qmc
 
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
+from rca.case.site import local_atmosphere
 from rca.case.vocabulary import PartKind, PumpKind
 from rca.physics.atmosphere import WEATHER_SPREAD
 from rca.physics.dissolved_air import TAU_RELEASE, released_ratio, released_share_in_time
@@ -18,7 +19,6 @@ from rca.suction.budget import (
     bunsen,
     fluid_viscosities,
     line_residence,
-    local_atmosphere,
     pressure_budget,
     pump_flow,
 )

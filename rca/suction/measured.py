@@ -7,13 +7,13 @@ import numpy.typing as npt
 
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
+from rca.case.site import local_atmosphere
 from rca.physics.dissolved_air import released_ratio, released_share_in_time
 from rca.records.running import running_bins, standing_bins
 from rca.suction.budget import (
     bunsen,
     fluid_viscosities,
     line_residence,
-    local_atmosphere,
     pressure_budget,
     pump_flow,
 )
