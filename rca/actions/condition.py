@@ -29,7 +29,7 @@ _HOURS |= {"week": 168.0, "weeks": 168.0}
 _CLAUSE = re.compile(
     r"""(?P<function>[\w]+)\s*\(\s*(?P<quantity>[^()]*?)\s*\)\s*
         (?P<comparison>>=|<=|>|<|=+)\s*
-        (?P<value>[-+\u2212]?[\d.,]+\s*.*?)
+        (?P<value>[-+\u2212]?[\d.,]+\s*\S*)
         (?:\s+for\s+(?P<number>[\d.]+)\s*(?P<unit>[A-Za-z]+))?
         (?:\s+after\s+(?P<anchor>\S+))?""",
     re.VERBOSE,
