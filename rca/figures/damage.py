@@ -63,7 +63,7 @@ def _style(worst: dict[str, Observation], zone: str) -> dict[str, Any]:
 
 def _label(axes: Axes, worst: dict[str, Observation], zone: str, at: tuple[float, float]) -> None:
     one = worst.get(zone)
-    words = "not looked at" if one is None else f"{one.sign.value}, {one.extent.value}"
+    words = "no finding" if one is None else f"{one.sign.value}, {one.extent.value}"
     if one is not None and one.extent is Extent.NONE:
         words = "looked for, absent"
     axes.text(

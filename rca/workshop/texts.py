@@ -70,7 +70,7 @@ viscosity_100 = "6.8 mm2/s"
 density_15 = "872 kg/m3"
 flash_point = "214 degC"
 temperature = "50 degC"
-coldest_start = "12 degC"
+coldest_start = "7 degC"
 
 [[oil_reports]]
 file = "oil/lab-export.csv"
