@@ -9,6 +9,8 @@ import openpyxl
 import polars as pl
 import pytest
 
+from rca.intake.read import read_case
+from rca.suction.check import check_suction
 from rca.workshop import sample_case
 from rca.workshop.plant import burst, run, viscosity
 
@@ -99,3 +101,15 @@ def test_the_burst_carries_the_piston_frequency() -> None:
     frequency = np.fft.rfftfreq(pressure.size, 1 / 50_000)
     band = frequency > 50
     assert frequency[band][np.argmax(spectrum[band])] == pytest.approx(222.0, abs=2.0)
+
+
+def test_the_plant_and_the_budget_agree_on_the_clean_line(sample_dir: Path) -> None:
+    """Two models made apart: lumped linear losses against the part-by-part budget."""
+    case = read_case(sample_dir).case
+    assert case is not None
+    budget = check_suction(case, None, seed=1, samples=512).normal
+    log = run(sample_case.SEED)
+    warm = (log.oil_degc > 49) & (log.speed_rpm > 1000)
+    first_day = log.inlet_bar[warm & (log.time < log.time[0] + 86400)].mean()
+    assert budget is not None
+    assert budget.pressure.mean / 1e5 == pytest.approx(first_day, abs=0.03)
