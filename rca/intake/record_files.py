@@ -5,10 +5,9 @@ handed on as a burst. Time is the file's stamps in the stated zone, plus the sta
 drift. What can't be read is counted and said, never filled in.
 """
 
-from collections.abc import Iterator
-from dataclasses import dataclass, field
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field, replace
 from pathlib import Path
-from zoneinfo import ZoneInfo
 
 import numpy as np
 import numpy.typing as npt
@@ -18,6 +17,7 @@ from rca.base.source import Source
 from rca.base.units import Scale, channel_scale
 from rca.case.model import Case, RecordFile
 from rca.case.series import AlignedRecord, Series
+from rca.intake.record_time import choose_format, read_stamps
 
 FloatArray = npt.NDArray[np.float64]
 FAST_HZ = 500.0
@@ -54,6 +54,8 @@ class FileSummary:
     offset_s: float
     channels: tuple[str, ...]
     fast: bool
+    repeated_stamps: int = 0  # equal neighbours: a clock coarser than the sampling; all are kept
+    remarks: tuple[Problem, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -97,6 +99,7 @@ def read_records(
             problems.append(error.problem)
             continue
         files.append(summary)
+        problems += summary.remarks
         if summary.fast:
             bursts += _bursts(record, time, columns, summary)
         else:
@@ -116,12 +119,19 @@ def read_file(
 
     Raises RecordError for a missing column, no readable time or an unreadable file.
     """
-    scales = {c.column: (c.quantity, channel_scale(c.quantity, c.unit)) for c in record.channels}
+    scales = {
+        c.column: (c.quantity, channel_scale(c.quantity, c.unit))
+        for i, c in enumerate(record.channels)
+        if c.quantity not in [earlier.quantity for earlier in record.channels[:i]]
+    }
     collected = _Collected(columns={quantity: [] for quantity, _ in scales.values()})
     bad_cells = dict.fromkeys(collected.columns, 0)
-    bad_stamps = 0
-    for frame in _blocks(folder / record.file, record):
-        stamps = _stamps(frame, record, sum(t.size for t in collected.time))
+    bad_stamps = seen = 0
+    path = folder / record.file
+    form, rival = _time_format(lambda: _blocks(path, record, only_time=True), record)
+    for frame in _blocks(path, record):
+        stamps = _stamps(frame, record, seen, form)
+        seen += stamps.size
         known = np.isfinite(stamps)
         bad_stamps += int((~known).sum())
         collected.time.append(stamps[known])
@@ -138,15 +148,45 @@ def read_file(
         )
     time = np.concatenate(collected.time)
     columns = {q: np.concatenate(parts) for q, parts in collected.columns.items()}
-    backward = int(np.sum(np.diff(time) <= 0))
+    backward = int(np.sum(np.diff(time) < 0))
     if backward:
         order = np.argsort(time, kind="stable")
         time, columns = time[order], {q: v[order] for q, v in columns.items()}
-        fresh = np.concatenate([[True], np.diff(time) > 0])
-        time, columns = time[fresh], {q: v[fresh] for q, v in columns.items()}
     first = time[0]
     time = time + record.time.offset_s + (time - first) * record.time.drift_ppm * 1e-6
-    return time, columns, _summary(record, time, bad_stamps, backward, bad_cells)
+    summary = _summary(record, time, bad_stamps, backward, bad_cells)
+    return time, columns, replace(summary, remarks=_remarks(record, scales, rival, form))
+
+
+def _remarks(
+    record: RecordFile, scales: dict[str, tuple[str, Scale]], rival: str, form: str
+) -> tuple[Problem, ...]:
+    """What a person should look at, though the file was read."""
+    found = []
+    for channel in record.channels:
+        if channel.column not in scales:
+            found.append(
+                Problem(
+                    severity=Severity.WARNING,
+                    file=record.file,
+                    place=f"column {channel.column}",
+                    found=f"a second channel of {channel.quantity}",
+                    expected="one channel a quantity; the first one is used",
+                    mend="Keep the better sensor first, or remove the other from case.toml.",
+                )
+            )
+    if rival:
+        found.append(
+            Problem(
+                severity=Severity.WARNING,
+                file=record.file,
+                place=f"column {record.time.column}",
+                found=f"stamps that read equally well as {form} and as {rival}",
+                expected="stamps that tell day from month",
+                mend=f"They are read as {form}; check the date, or export ISO 8601 stamps.",
+            )
+        )
+    return tuple(found)
 
 
 def _summary(
@@ -155,7 +195,7 @@ def _summary(
     steps = np.diff(time)
     # differences of epoch seconds hold only 0.2 us; a stated rate is exact
     stated = record.time.rate_hz if not record.time.column else None
-    interval = 1.0 / stated if stated else float(np.median(steps)) if steps.size else 0.0
+    interval = 1.0 / stated if stated else _interval(steps)
     places = (
         np.flatnonzero(steps > GAP_INTERVALS * interval) if interval > 0 else np.array([], int)
     )
@@ -172,10 +212,21 @@ def _summary(
         offset_s=record.time.offset_s,
         channels=tuple(c.quantity for c in record.channels),
         fast=interval > 0 and 1.0 / interval >= FAST_HZ,
+        repeated_stamps=int(np.sum(steps <= 0)),
     )
 
 
-def _blocks(path: Path, record: RecordFile) -> Iterator[object]:
+def _interval(steps: FloatArray) -> float:
+    """The sampling interval [s]; under a clock coarser than the sampling, tick over samples."""
+    forward = steps[steps > 0]
+    if not forward.size:
+        return 0.0
+    if forward.size > 0.8 * steps.size:
+        return float(np.median(forward))
+    return float(np.median(forward)) * forward.size / steps.size
+
+
+def _blocks(path: Path, record: RecordFile, *, only_time: bool = False) -> Iterator[object]:
     """Frames of text (CSV) or typed columns (Parquet), at most ``BLOCK_ROWS`` rows each."""
     import polars as pl  # noqa: PLC0415  its thread pool must not exist before a fork
 
@@ -191,7 +242,8 @@ def _blocks(path: Path, record: RecordFile) -> Iterator[object]:
         else:
             lazy = pl.scan_csv(
                 path,
-                separator=_separator(path),
+                separator=_separator(path, wanted)[0],
+                skip_lines=_separator(path, wanted)[1],
                 infer_schema=False,
                 truncate_ragged_lines=True,
                 encoding="utf8-lossy",
@@ -202,6 +254,8 @@ def _blocks(path: Path, record: RecordFile) -> Iterator[object]:
         raise _error(
             record, f"a file that can't be read ({error})", "CSV or Parquet", "Export it again."
         ) from error
+    if only_time:
+        wanted = [record.time.column]
     for column in wanted:
         if column not in names:
             raise _error(
@@ -210,32 +264,48 @@ def _blocks(path: Path, record: RecordFile) -> Iterator[object]:
                 f"one of {', '.join(names[:40])}",
                 "Mend the column name in case.toml; capitals and spaces count.",
             )
-    start = 0
-    while True:
-        try:
-            frame = lazy.select(wanted).slice(start, BLOCK_ROWS).collect(engine="streaming")
-        except pl.exceptions.PolarsError as error:
-            raise _error(
-                record,
-                f"rows that can't be read ({error})",
-                "one format throughout",
-                "Look at the rows near the end of the file.",
-            ) from error
-        if frame.height == 0:
-            return
-        yield frame
-        if frame.height < BLOCK_ROWS:
-            return
-        start += BLOCK_ROWS
+    try:
+        yield from lazy.select(wanted).collect_batches(
+            chunk_size=BLOCK_ROWS, maintain_order=True, engine="streaming"
+        )
+    except pl.exceptions.PolarsError as error:
+        raise _error(
+            record,
+            f"rows that can't be read ({error})",
+            "one format throughout",
+            "Look at the rows near the end of the file.",
+        ) from error
 
 
-def _separator(path: Path) -> str:
+def _separator(path: Path, wanted: list[str]) -> tuple[str, int]:
+    """The delimiter, and how many title lines stand above the header."""
     with path.open("rb") as stream:
-        head = stream.read(20_000).decode("utf-8", errors="replace").splitlines()[:10]
-    return max(";\t,", key=lambda d: min((line.count(d) for line in head), default=0))
+        head = stream.read(20_000).decode("utf-8-sig", errors="replace").splitlines()[:60]
+    for number, line in enumerate(head):
+        for delimiter in ";\t,":
+            names = [cell.strip().strip('"').strip() for cell in line.split(delimiter)]
+            if len(names) > 1 and all(column in names for column in wanted):
+                return delimiter, number
+    return max(";\t,", key=lambda d: min((line.count(d) for line in head[:10]), default=0)), 0
 
 
-def _stamps(frame: object, record: RecordFile, before: int) -> FloatArray:
+def _time_format(frames: Callable[[], Iterator[object]], record: RecordFile) -> tuple[str, str]:
+    """The format of the time column, from stamps spread over the whole file, and a tied rival."""
+    import polars as pl  # noqa: PLC0415
+
+    if not record.time.column:
+        return "", ""
+    parts = []
+    for frame in frames():
+        assert isinstance(frame, pl.DataFrame)
+        column = frame.get_column(record.time.column)
+        if column.dtype != pl.String:
+            return "", ""
+        parts += [column.head(100), column.gather_every(max(1, frame.height // 200))]
+    return choose_format(pl.concat(parts)) if parts else ("", "")
+
+
+def _stamps(frame: object, record: RecordFile, before: int, form: str) -> FloatArray:
     """Seconds since 1970 UTC, NaN where a stamp can't be read."""
     import polars as pl  # noqa: PLC0415
 
@@ -244,73 +314,16 @@ def _stamps(frame: object, record: RecordFile, before: int) -> FloatArray:
     if not axis.column:
         assert axis.start is not None and axis.rate_hz is not None  # noqa: PT018
         return axis.start.timestamp() + (before + np.arange(frame.height)) / axis.rate_hz
-    column = frame.get_column(axis.column)
-    if column.dtype.is_temporal():
-        naive = getattr(column.dtype, "time_zone", None) is None
-        epoch = column.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6
-        return _localised(epoch, axis.zone, record) if naive else np.asarray(epoch)
-    if column.dtype.is_numeric():
-        return _epoch(column.cast(pl.Float64).to_numpy())
-    text = column.cast(pl.String).str.strip_chars()
-    numeric = text.cast(pl.Float64, strict=False)
-    if numeric.null_count() < frame.height / 2:
-        return _epoch(numeric.to_numpy())
-    zoned = text.str.contains(r"(Z|[+-]\d\d:?\d\d)$")
-    if float(zoned.fill_null(value=False).mean() or 0.0) > 0.5:  # type: ignore[arg-type]
-        parsed = text.str.to_datetime(strict=False, time_unit="us", time_zone="UTC")
-        return np.asarray(parsed.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6)
-    formats = (
-        "%Y-%m-%d %H:%M:%S%.f",
-        "%Y-%m-%dT%H:%M:%S%.f",
-        "%d.%m.%Y %H:%M:%S%.f",
-        "%Y/%m/%d %H:%M:%S%.f",
-        "%d/%m/%Y %H:%M:%S%.f",
-        "%Y-%m-%d %H:%M",
-    )
-    best = min(
-        (text.str.to_datetime(form, strict=False, time_unit="us") for form in formats),
-        key=lambda series: series.null_count(),
-    )
-    epoch = best.dt.epoch("us").cast(pl.Float64).to_numpy() * 1e-6
-    return _localised(np.asarray(epoch, dtype=float), axis.zone, record)
 
-
-def _epoch(values: FloatArray) -> FloatArray:
-    """Seconds, milliseconds, microseconds since 1970, or spreadsheet day numbers, by size."""
-    seen = values[np.isfinite(values)]
-    middle = float(np.median(seen)) if seen.size else float("nan")
-    if 20_000 < middle < 80_000:  # spreadsheet days since 1899-12-30
-        return np.asarray((values - 25569.0) * 86400.0)
-    factor = 1.0 if middle < 1e11 else 1e-3 if middle < 1e14 else 1e-6
-    return np.asarray(values * factor)
-
-
-def _localised(epoch: FloatArray, zone: str, record: RecordFile) -> FloatArray:
-    """Naive stamps read in their zone; the offset is taken hour by hour across time changes."""
-    if not zone:
-        raise _error(
+    def complain() -> Exception:
+        return _error(
             record,
             "stamps without a zone",
             "a zone",
             'Add it:  time = { column = "...", zone = "Europe/Vienna" }',
         )
-    if zone == "UTC":
-        return epoch
-    from datetime import UTC, datetime  # noqa: PLC0415
 
-    info = ZoneInfo(zone)
-    hours = np.floor(epoch / 3600.0)
-    shifts = {}
-    for hour in np.unique(hours[np.isfinite(hours)]):
-        naive = datetime.fromtimestamp(float(hour) * 3600.0, tz=UTC).replace(tzinfo=info)
-        offset = naive.utcoffset()
-        shifts[hour] = offset.total_seconds() if offset is not None else 0.0
-    keys = np.array(sorted(shifts))
-    if not keys.size:
-        return epoch
-    places = np.clip(np.searchsorted(keys, hours), 0, keys.size - 1)
-    values = np.array([shifts[k] for k in keys])
-    return np.asarray(np.where(np.isfinite(epoch), epoch - values[places], np.nan))
+    return read_stamps(frame.get_column(axis.column), form, axis.zone, complain=complain)
 
 
 def _numbers(frame: object, column: str, record: RecordFile) -> tuple[FloatArray, int]:
@@ -338,15 +351,22 @@ def _si(values: FloatArray, scale: Scale, atmosphere: float) -> FloatArray:
 def _bursts(
     record: RecordFile, time: FloatArray, columns: dict[str, FloatArray], summary: FileSummary
 ) -> list[Burst]:
+    steps = np.diff(time)
+    tick = float(np.median(steps[steps > 0])) if (steps > 0).any() else summary.interval_s
+    edges = np.concatenate([[0], np.flatnonzero(steps > GAP_INTERVALS * tick) + 1, [time.size]])
+    longest = int(np.argmax(np.diff(edges)))  # a gap is never bridged
+    first, after = int(edges[longest]), int(edges[longest + 1])
+    after = min(after, first + BURST_SAMPLES)
+    part = f", samples {first + 1} to {after} of {time.size}" if after - first < time.size else ""
     return [
         Burst(
             quantity=quantity,
-            start_s=float(time[0]),
+            start_s=float(time[first]),
             rate_hz=1.0 / summary.interval_s,
-            values=values[:BURST_SAMPLES],
+            values=values[first:after],
             source=Source(
                 file=record.file,
-                locator=f"column {_column(record, quantity)}",
+                locator=f"column {_column(record, quantity)}{part}",
             ),
         )
         for quantity, values in columns.items()
@@ -364,10 +384,11 @@ def _aligned(
     origin = np.floor(start / width) * width
     bins = int(np.floor((end - origin) / width)) + 1
     series: dict[str, Series] = {}
-    for record, time, columns, _ in slow:
+    for record, time, columns, summary in slow:
         index = np.floor((time - origin) / width).astype(np.int64)
         for quantity, values in columns.items():
             fresh = _binned(record, quantity, index, values, bins)
+            fresh = _held(fresh, int(np.ceil(summary.interval_s / width)))
             series[quantity] = _merged(series[quantity], fresh) if quantity in series else fresh
     centres = origin + (np.arange(bins) + 0.5) * width
     return AlignedRecord(time_s=centres, bin_s=float(width), series=series)
@@ -397,6 +418,15 @@ def _binned(
         high=high,
         source=Source(file=record.file, locator=f"column {_column(record, quantity)}"),
     )
+
+
+def _held(series: Series, bins: int) -> Series:
+    """A sample stands for one sampling interval, ``bins`` long, and never for longer."""
+    places = np.arange(series.mean.size)
+    last = np.maximum.accumulate(np.where(np.isfinite(series.mean), places, -1))
+    fill = (last >= 0) & (places - last <= bins) & (places > last)
+    take = np.where(fill, last, places)
+    return replace(series, mean=series.mean[take], low=series.low[take], high=series.high[take])
 
 
 def _merged(one: Series, other: Series) -> Series:
