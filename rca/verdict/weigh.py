@@ -35,7 +35,8 @@ from rca.verdict.side import side_of
 FloatArray = npt.NDArray[np.float64]
 DRAWS = 2048
 CHUNK = 64
-MOST_REMOVED = 3  # items taken out together in the search for a flip
+MOST_REMOVED = 3  # items taken out together in the search for a flip, among the ...
+HEAVIEST = 12  # ... items that move the odds most
 
 
 @dataclass(frozen=True, slots=True)
@@ -347,17 +348,31 @@ def _band(best: float, values: FloatArray) -> Band:
 def _flip_set(
     knowledge: Knowledge, items: Sequence[EvidenceItem], side: str, groups: int
 ) -> tuple[str, ...]:
-    """The smallest set of items whose removal changes the side, up to three; () where none."""
-    keys = [item.key for item in items]
+    """The smallest set of items whose removal changes the side, up to three; () where none.
+
+    Sets are made of the heaviest items only: those whose own removal moves a side's odds most.
+    """
+    keys = _heaviest(knowledge, items)
     for size in range(1, min(MOST_REMOVED, len(keys)) + 1):
         sets = [set(c) for c in combinations(keys, size)]
-        for start in range(0, min(len(sets), 2048), 256):
-            block = sets[start : start + 256]
-            found = posterior(knowledge, items, weights=_leave_out(items, block))
-            for n, removed in enumerate(block):
-                if _side(found, n, groups) != side:
-                    return tuple(sorted(removed))
+        found = posterior(knowledge, items, weights=_leave_out(items, sets))
+        for n, removed in enumerate(sets):
+            if _side(found, n, groups) != side:
+                return tuple(sorted(removed))
     return ()
+
+
+def _heaviest(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> list[str]:
+    """Keys of the items whose own removal moves the odds of a side most."""
+    if not items:
+        return []
+    base = posterior(knowledge, items)
+    without = posterior(knowledge, items, weights=_leave_out(items, [{i.key} for i in items]))
+    moved = np.maximum(
+        np.abs(np.log(_odds(without.suction) / _odds(base.suction))),
+        np.abs(np.log(_odds(without.discharge) / _odds(base.discharge))),
+    )
+    return [items[k].key for k in np.argsort(-moved, kind="stable")[:HEAVIEST]]
 
 
 def _second_method(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> str:
