@@ -15,6 +15,18 @@ Mask = npt.NDArray[np.bool_]
 STUCK_HOURS = 24.0  # a running channel this long on one value is stuck; common practice
 COLD_BELOW = 12.0  # [K] below normal temperature
 LONGEST_LIST = 200
+ABSOLUTE = (
+    "inlet pressure",
+    "discharge pressure",
+    "case drain pressure",
+    "headspace pressure",
+    "return pressure",
+)
+MAY_STAND_STILL = ("shaft speed", "valve command", "reservoir level")
+ZERO_TOLERANCE = 0.05e5  # [Pa] below zero absolute that a transducer's own error explains;
+# common practice, no source
+SPIKE_SHARE = 1e-3  # of the samples; more of them impossible is no spike any more
+GAUGE_SHARE = 0.2  # of the samples at or below zero; vapour at the port is above zero
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -119,7 +131,7 @@ def usable(case: Case, aligned: AlignedRecord) -> AlignedRecord:
     return replace(
         aligned,
         series={
-            q: replace(s, usable=False, remark=remarks[q]) if q in remarks else s
+            q: replace(s, usable=False, remark=remarks[q]) if q in remarks else _without_spikes(s)
             for q, s in aligned.series.items()
         },
     )
@@ -189,12 +201,10 @@ def _remarks(
     values = series.mean[np.isfinite(series.mean)]
     if not values.size:
         return [("holds no readable sample", True)]
-    if "pressure" in quantity and "filter" not in quantity and float(np.min(values)) <= 0.0:
-        found.append(
-            ("falls to or below zero absolute; the unit may be gauge, not absolute", True)
-        )
+    if quantity in ABSOLUTE:
+        found += _below_zero(values, series)
     stuck = _longest_same(series.mean, running) * aligned.bin_s / 3600.0
-    if stuck > STUCK_HOURS and quantity != "shaft speed":
+    if stuck > STUCK_HOURS and quantity not in MAY_STAND_STILL:
         found.append((f"stays on one value for {stuck:.0f} running hours: stuck", True))
     if quantity == "inlet pressure":
         rest = standing_bins(aligned) & np.isfinite(series.mean)
@@ -211,6 +221,35 @@ def _remarks(
     return found
 
 
+def _below_zero(values: FloatArray, series: Series) -> list[tuple[str, bool]]:
+    """No absolute pressure lies below zero: many such samples tell a gauge, a few tell spikes."""
+    impossible = float(np.mean(values < -ZERO_TOLERANCE))
+    if impossible > SPIKE_SHARE or float(np.mean(values <= 0.0)) > GAUGE_SHARE:
+        return [("lies at or below zero absolute; the unit may be gauge, not absolute", True)]
+    spikes = int(np.sum(_spikes(series)))
+    if spikes:
+        return [(f"falls below zero absolute in {spikes} bins: spikes, left out", False)]
+    return []
+
+
+def _spikes(series: Series) -> Mask:
+    """Bins holding an absolute pressure that can't be."""
+    return np.asarray(np.nan_to_num(series.low, nan=0.0) < -ZERO_TOLERANCE)
+
+
+def _without_spikes(series: Series) -> Series:
+    if series.quantity not in ABSOLUTE or not series.usable or not _spikes(series).any():
+        return series
+    keep = ~_spikes(series)
+    return replace(
+        series,
+        mean=np.where(keep, series.mean, np.nan),
+        low=np.where(keep, series.low, np.nan),
+        high=np.where(keep, series.high, np.nan),
+        remark=f"{int((~keep).sum())} bins with spikes below zero absolute are left out",
+    )
+
+
 def _longest_same(values: FloatArray, running: Mask) -> int:
     """Longest run of equal neighbouring samples while running, in bins."""
     seen = values[running & np.isfinite(values)]
@@ -222,9 +261,10 @@ def _longest_same(values: FloatArray, running: Mask) -> int:
 
 
 def _duty(aligned: AlignedRecord, running: Mask, cold: Mask | None) -> Duty:
-    starts = np.flatnonzero(np.diff(running.astype(np.int8)) == 1) + 1
     hour = aligned.bin_s / 3600.0
     known = np.any([np.isfinite(s.mean) for s in aligned.series.values()], axis=0)
+    seen = _seen_standing_or_running(aligned, known)
+    starts = np.flatnonzero(running[1:] & ~running[:-1] & seen[:-1]) + 1
     return Duty(
         hours_recorded=float(known.sum()) * hour,
         hours_running=float((running & known).sum()) * hour,
@@ -234,6 +274,15 @@ def _duty(aligned: AlignedRecord, running: Mask, cold: Mask | None) -> Duty:
         discharge_p95=_p95(aligned, "discharge pressure", running),
         speed_p95=_p95(aligned, "shaft speed", running),
     )
+
+
+def _seen_standing_or_running(aligned: AlignedRecord, known: Mask) -> Mask:
+    """Bins in which the state of the machine is on record; a gap's end is no start."""
+    for quantity in ("shaft speed", "discharge pressure"):
+        series = aligned.get(quantity)
+        if series is not None:
+            return np.asarray(np.isfinite(series.mean))
+    return known
 
 
 def _p95(aligned: AlignedRecord, quantity: str, running: Mask) -> float | None:

@@ -19,6 +19,8 @@ def running_bins(case: Case, aligned: AlignedRecord) -> Mask:
         if discharge is None:
             return np.ones(aligned.time_s.shape, dtype=bool)
         return np.nan_to_num(discharge.mean, nan=0.0) > 1.013e5 + LOADED
+    if not np.isfinite(speed.mean).any():
+        return np.zeros(aligned.time_s.shape, dtype=bool)
     nominal = case.pump.speed.value if case.pump.speed else float(np.nanmax(speed.mean))
     return np.nan_to_num(speed.mean, nan=0.0) > RUNNING_SHARE * nominal
 
@@ -26,6 +28,6 @@ def running_bins(case: Case, aligned: AlignedRecord) -> Mask:
 def standing_bins(aligned: AlignedRecord) -> Mask:
     """Bins in which the shaft stands; none where no speed is on record."""
     speed = aligned.get("shaft speed")
-    if speed is None:
+    if speed is None or not np.isfinite(speed.mean).any():
         return np.zeros(aligned.time_s.shape, dtype=bool)
     return np.nan_to_num(speed.high, nan=1.0) < 0.02 * float(np.nanmax(speed.mean))
