@@ -16,13 +16,13 @@ from rca.base.errors import Problem, Severity
 from rca.base.source import Source
 from rca.base.units import Scale, channel_scale
 from rca.case.model import Case, RecordFile
-from rca.case.series import AlignedRecord, Series
+from rca.case.series import AlignedRecord
+from rca.intake.record_align import align, column_of
 from rca.intake.record_time import choose_format, read_stamps
 
 FloatArray = npt.NDArray[np.float64]
 FAST_HZ = 500.0
 BLOCK_ROWS = 500_000
-MOST_BINS = 200_000
 BURST_SAMPLES = 4_000_000
 GAP_INTERVALS = 5.0  # a step this many sampling intervals long is a gap
 
@@ -105,7 +105,7 @@ def read_records(
         else:
             slow.append((record, time, columns, summary))
     return RecordReading(
-        aligned=_aligned(slow, bin_s) if slow else None,
+        aligned=align([(r, t, c, f.interval_s) for r, t, c, f in slow], bin_s) if slow else None,
         bursts=tuple(bursts),
         files=tuple(files),
         problems=tuple(problems),
@@ -366,87 +366,11 @@ def _bursts(
             values=values[first:after],
             source=Source(
                 file=record.file,
-                locator=f"column {_column(record, quantity)}{part}",
+                locator=f"column {column_of(record, quantity)}{part}",
             ),
         )
         for quantity, values in columns.items()
     ]
-
-
-def _aligned(
-    slow: list[tuple[RecordFile, FloatArray, dict[str, FloatArray], FileSummary]],
-    bin_s: float | None,
-) -> AlignedRecord:
-    start = min(float(time[0]) for _, time, _, _ in slow)
-    end = max(float(time[-1]) for _, time, _, _ in slow)
-    finest = max(min(s.interval_s for *_, s in slow), 1e-3)
-    width = bin_s or max(finest, (end - start) / MOST_BINS)
-    origin = np.floor(start / width) * width
-    bins = int(np.floor((end - origin) / width)) + 1
-    series: dict[str, Series] = {}
-    for record, time, columns, summary in slow:
-        index = np.floor((time - origin) / width).astype(np.int64)
-        for quantity, values in columns.items():
-            fresh = _binned(record, quantity, index, values, bins)
-            fresh = _held(fresh, int(np.ceil(summary.interval_s / width)))
-            series[quantity] = _merged(series[quantity], fresh) if quantity in series else fresh
-    centres = origin + (np.arange(bins) + 0.5) * width
-    return AlignedRecord(time_s=centres, bin_s=float(width), series=series)
-
-
-def _binned(
-    record: RecordFile,
-    quantity: str,
-    index: npt.NDArray[np.int64],
-    values: FloatArray,
-    bins: int,
-) -> Series:
-    good = np.isfinite(values)
-    place, value = index[good], values[good]
-    count = np.bincount(place, minlength=bins)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        mean = np.bincount(place, weights=value, minlength=bins) / count
-    low, high = np.full(bins, np.inf), np.full(bins, -np.inf)
-    np.minimum.at(low, place, value)
-    np.maximum.at(high, place, value)
-    low[count == 0] = high[count == 0] = np.nan
-    return Series(
-        quantity=quantity,
-        unit="SI",
-        mean=mean,
-        low=low,
-        high=high,
-        source=Source(file=record.file, locator=f"column {_column(record, quantity)}"),
-    )
-
-
-def _held(series: Series, bins: int) -> Series:
-    """A sample stands for one sampling interval, ``bins`` long, and never for longer."""
-    places = np.arange(series.mean.size)
-    last = np.maximum.accumulate(np.where(np.isfinite(series.mean), places, -1))
-    fill = (last >= 0) & (places - last <= bins) & (places > last)
-    take = np.where(fill, last, places)
-    return replace(series, mean=series.mean[take], low=series.low[take], high=series.high[take])
-
-
-def _merged(one: Series, other: Series) -> Series:
-    """Two files of one quantity; where both have samples the first file's stand."""
-    take = np.isfinite(one.mean)
-    return Series(
-        quantity=one.quantity,
-        unit=one.unit,
-        mean=np.where(take, one.mean, other.mean),
-        low=np.where(take, one.low, other.low),
-        high=np.where(take, one.high, other.high),
-        source=Source(
-            file=one.source.file,
-            locator=f"{one.source.locator}, and {other.source.file} {other.source.locator}",
-        ),
-    )
-
-
-def _column(record: RecordFile, quantity: str) -> str:
-    return next(c.column for c in record.channels if c.quantity == quantity)
 
 
 def _error(record: RecordFile, found: str, expected: str, mend: str) -> RecordError:
