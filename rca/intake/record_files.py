@@ -147,7 +147,7 @@ def read_file(
             "Check the time column and its format.",
         )
     time = np.concatenate(collected.time)
-    columns = {q: np.concatenate(parts) for q, parts in collected.columns.items()}
+    columns = {q: np.concatenate(collected.columns.pop(q)) for q in list(collected.columns)}
     backward = int(np.sum(np.diff(time) < 0))
     if backward:
         order = np.argsort(time, kind="stable")
@@ -295,12 +295,16 @@ def _time_format(frames: Callable[[], Iterator[object]], record: RecordFile) -> 
 
     if not record.time.column:
         return "", ""
-    parts = []
+    parts: list[pl.Series] = []
     for frame in frames():
         assert isinstance(frame, pl.DataFrame)
         column = frame.get_column(record.time.column)
         if column.dtype != pl.String:
             return "", ""
+        if not parts:
+            first = choose_format(column.head(2000))
+            if first[0] and not first[0].startswith(("%d/", "%m/")):
+                return first
         parts += [column.head(100), column.gather_every(max(1, frame.height // 200))]
     return choose_format(pl.concat(parts)) if parts else ("", "")
 
@@ -335,12 +339,15 @@ def _numbers(frame: object, column: str, record: RecordFile) -> tuple[FloatArray
     series = frame.get_column(column)
     if series.dtype.is_numeric():
         return np.asarray(series.cast(pl.Float64).to_numpy(), dtype=float), 0
-    text = series.cast(pl.String).str.strip_chars()
-    if bool(text.str.contains(r"^-?\d+,\d+$").fill_null(value=False).any()):
-        text = text.str.replace(",", ".", literal=True)
-    numbers = text.cast(pl.Float64, strict=False)
-    blank = text.is_null() | (text == "")
-    bad = int((numbers.is_null() & ~blank.fill_null(value=True)).sum())
+    numbers = series.cast(pl.Float64, strict=False)
+    bad = 0
+    if numbers.null_count():
+        text = series.cast(pl.String).str.strip_chars()
+        if bool(text.str.contains(r"^-?\d+,\d+$").fill_null(value=False).any()):
+            text = text.str.replace(",", ".", literal=True)
+        numbers = text.cast(pl.Float64, strict=False)
+        blank = text.is_null() | (text == "")
+        bad = int((numbers.is_null() & ~blank.fill_null(value=True)).sum())
     return np.asarray(numbers.fill_null(float("nan")).to_numpy(), dtype=float), bad
 
 
