@@ -15,6 +15,7 @@ from rca.case.model import Case
 from rca.figures.style import font_folder
 from rca.report.pdf import write_pdf
 from rca.report.photos import shrink_photos
+from rca.report.references import linker, shown_ids
 from rca.report.view import build_page
 
 PAPERS = ("A4", "Letter")
@@ -55,6 +56,7 @@ def render_report(
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    environment.filters["linked"] = linker(shown_ids(page.verdict_panels))
     style = environment.get_template("report.css").render(page=page)
     html = environment.get_template("report.html.j2").render(page=page, style=style)
     target = out / "report.html"
