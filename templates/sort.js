@@ -1,4 +1,9 @@
 "use strict";
+// A cell counts as a number only where all of it is one: a date or a range sorts as text.
+const number = (text) => {
+  const plain = text.replace(/^[<>≤≥≈~]\s*/, "").replace("−", "-");
+  return plain === "" ? NaN : Number(plain);
+};
 for (const table of document.querySelectorAll("table.data")) {
   const body = table.tBodies[0];
   table.querySelectorAll("thead th").forEach((head, column) => {
@@ -12,9 +17,10 @@ for (const table of document.querySelectorAll("table.data")) {
       head.setAttribute("aria-sort", down ? "descending" : "ascending");
       const key = (row) => row.cells[column].textContent.trim();
       const rows = [...body.rows].sort((a, b) => {
-        const x = parseFloat(key(a)), y = parseFloat(key(b));
-        const order = Number.isNaN(x) || Number.isNaN(y)
-          ? key(a).localeCompare(key(b)) : x - y;
+        const x = number(key(a)), y = number(key(b));
+        const words = Number(Number.isNaN(x)) - Number(Number.isNaN(y));
+        const order = words || (Number.isNaN(x)
+          ? key(a).localeCompare(key(b), undefined, { numeric: true }) : x - y);
         return down ? -order : order;
       });
       body.append(...rows);
