@@ -92,7 +92,8 @@ def military_handbook(ages: Sequence[float], end: float | None = None) -> TrendT
 def reverse_arrangements(ages: Sequence[float]) -> TrendTest:
     """Pairs of gaps in rising order; no model is assumed. Normal approximation, two-sided.
 
-    Equal gaps do not count, as in the e-Handbook. Raises OutOfRangeError for fewer than four events.
+    Equal gaps do not count, as in the e-Handbook.
+    Raises OutOfRangeError for fewer than four events.
     """
     t = _ages(ages, None)
     if t.size < 4:
