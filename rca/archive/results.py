@@ -37,6 +37,7 @@ def assemble(case: Case, store: Store, *, record: Mapping[str, Any]) -> dict[str
             "site": header.site,
             "occurred": header.occurred.isoformat() if header.occurred else None,
             "descriptor": to_plain(header),
+            "machine": _machine(case),
         },
         "verdict": verdict["verdict"],
         "causes": verdict["causes"],
@@ -76,6 +77,25 @@ def schema() -> dict[str, Any]:
     text = files("rca.archive").joinpath("results.schema.json").read_text(encoding="utf-8")
     plain: dict[str, Any] = json.loads(text)
     return plain
+
+
+def _machine(case: Case) -> dict[str, str | float | None]:
+    """What the comparison of cases holds side by side, in SI; None where not recorded."""
+    pump, fluid = case.pump, case.fluid
+    numbers = {
+        "displacement_m3": pump.displacement,
+        "speed_per_s": pump.speed,
+        "discharge_pressure_pa": pump.discharge_pressure,
+        "oil_volume_m3": case.reservoir.oil_volume,
+        "oil_temperature_k": fluid.temperature,
+        "viscosity_40_m2_per_s": fluid.viscosity_40,
+        "altitude_m": case.header.altitude,
+    }
+    words = {
+        "pump_kind": pump.kind.value if pump.kind else None,
+        "fluid_class": fluid.fluid_class.value if fluid.fluid_class else None,
+    }
+    return words | {name: r.value if r is not None else None for name, r in numbers.items()}
 
 
 def _gaps(case: Case, stages: Sequence[StageResult]) -> list[Any]:

@@ -1,6 +1,6 @@
 """What the verdict stage stores."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from rca.base.source import Source
 
@@ -25,6 +25,7 @@ class WeighedItem:
     suction_ratio: float  # Bayes factor for the suction side, given everything else
     discharge_ratio: float
     by_mechanism: dict[str, float]
+    likelihood: dict[str, float] = field(default_factory=dict)  # of the finding, by state
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -214,6 +214,7 @@ def _weighed(
                 suction_ratio=suction,
                 discharge_ratio=discharge,
                 by_mechanism=by,
+                likelihood=dict(item.likelihood),
             )
         )
     return tuple(out)
