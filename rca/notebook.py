@@ -40,6 +40,7 @@ from rca.evidence.from_discharge import from_discharge
 from rca.evidence.from_history import from_history
 from rca.evidence.from_oil import from_oil
 from rca.evidence.from_records import from_records
+from rca.evidence.from_statements import from_statements
 from rca.evidence.from_suction import from_suction
 from rca.evidence.item import EvidenceItem, NotAssessed
 from rca.figures.damage import figures_damage
@@ -94,6 +95,7 @@ __all__ = [
     "from_history",
     "from_oil",
     "from_records",
+    "from_statements",
     "from_suction",
     "inlet_limit",
     "open_investigation",

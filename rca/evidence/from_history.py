@@ -23,7 +23,7 @@ KINDS: dict[str, tuple[Node, float, float]] = {
     "erratic noise": (Node.NOISE_ERRATIC, 0.15, 0.7),
     "clicks at the filter": (Node.CLICKS_AT_FILTER, 0.05, 0.8),
     "loss of flow": (Node.FLOW_LOSS, 0.3, 0.8),
-    "milky oil": (Node.MILKY_CLEARS, 0.1, 0.7),
+    "milky oil": (Node.MILKY, 0.1, 0.7),
     "foam": (Node.FOAM, 0.1, 0.7),
     "oil change": (Node.RECENT_FLUID_CHANGE, 0.3, 0.9),
     "flush": (Node.RECENT_FLUID_CHANGE, 0.2, 0.9),
@@ -46,7 +46,7 @@ def from_history(case: Case) -> tuple[EvidenceItem | NotAssessed, ...]:
         if node in last:
             event, no, yes = last[node]
             items.append(_item(node, event, no, yes))
-        elif node not in (Node.MILKY_CLEARS, Node.FOAM):
+        elif node not in (Node.MILKY, Node.FOAM):
             items.append(
                 NotAssessed(
                     key=f"history.{node.name.lower()}",

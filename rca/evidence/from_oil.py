@@ -57,7 +57,6 @@ _RULES = (
     _Rule(Node.VARNISH_PATCH, ("patch_colour",), 1, 0.15, 0.08, 2.0),
     # plasma sees particles up to about 5 µm only; silicon is antifoam and sealant too
     _Rule(Node.DIRT, ("Si", "Al"), 1, 0.30, 0.08, together=True),
-    _Rule(Node.WEAR_METALS, ("Fe", "Cu", "Pb", "Cr", "Sn"), 1, 0.25, 0.03),
     _Rule(Node.COARSE_IRON, ("ferrous_index",), 1, 0.20, 0.06),
     _Rule(Node.AIR_RELEASE_SLOW, ("air_release", "foam_tendency"), 1, 0.20, 0.06),
     # additives also deplete, and laboratories differ
@@ -66,6 +65,12 @@ _RULES = (
 )
 # noise floors within which a routine value passes for normal in daily practice; judgement
 _ROUTINE = {"viscosity_40": 4.0, "acid_number": 1.0, "oxidation": 2.5}
+# usual level of a wear metal in service [mg/kg], about a quarter of the limits of the programme
+# named in the limits file; tin like chromium: judgement
+_USUAL_METAL = {"Fe": 5.0, "Cu": 2.5, "Pb": 2.0, "Cr": 1.2, "Sn": 1.2}
+_SPREAD_USUAL, _SPREAD_WORN = 0.7, 1.0  # standard deviations of the logarithm; judgement
+_WORN = 8.0  # times the usual level, the middle of what unusual wear leaves; judgement
+_WEAR_MISS, _WEAR_OTHER = 0.25, 0.05  # quiet though worn (fresh oil, fine filters); other sources
 _SILICON_ALONE = 0.30  # in place of the share of other causes where aluminium was not tested
 
 
@@ -76,6 +81,7 @@ def from_oil(case: Case, check: OilCheck | None) -> tuple[EvidenceItem | NotAsse
     found: list[Found] = [_by_rule(rule, judged, fresh) for rule in _RULES]
     found += _colour(check, fresh)
     found += _counts(judged, fresh)
+    found.append(_wear(judged, fresh))
     found.append(_water(case, judged))
     found.append(_conductivity(judged))
     return tuple(found)
@@ -266,10 +272,45 @@ def _counts(judged: dict[str, Judged], fresh: float) -> list[Found]:
         codes = one.value if name == "cleanliness_code" else log2(max(one.value, 0.01) / 0.01)
         # 18 is the limit quoted for HM oils; one code either way is noise
         likelihood = change_likelihood(
-            (codes - 18.0) / 2.0, "=", miss=1.0 - 0.6 * fresh, other=0.2
+            (codes - 18.0) / 2.0, "=", miss=1.0 - 0.75 * fresh, other=0.2
         )
         return [_item("oil.dirt.counts", Node.DIRT, one, likelihood, absent=codes <= 18.0)]
     return []
+
+
+def _wear(judged: dict[str, Judged], fresh: float) -> Found:
+    """Wear metals against what running machines usually show: a few mg/kg say nothing is wrong.
+
+    Level, not change, is weighed: every oil in service holds some metal, so a rise from new oil
+    beyond the noise is no sign by itself.
+    """
+    known = [judged[name] for name in _USUAL_METAL if name in judged]
+    if not known:
+        return NotAssessed(key="oil.wear_metals", node=Node.WEAR_METALS, missing="wear metals")
+    quiet = 1.0 - (1.0 - _WEAR_MISS) * fresh
+    other = 1.0 - (1.0 - _WEAR_OTHER) ** len(known)
+    ratios = []
+    for one in known:
+        usual, worn = _metal_densities(one)
+        ratios.append((quiet * usual + (1.0 - quiet) * worn, (1 - other) * usual + other * worn))
+    strongest = max(range(len(known)), key=lambda k: ratios[k][0] / ratios[k][1])
+    yes, no = ratios[strongest]
+    likelihood = {"no": no / (no + yes), "yes": yes / (no + yes)}
+    chosen = known[strongest]
+    return _item(
+        "oil.wear_metals", Node.WEAR_METALS, chosen, likelihood, absent=no > yes, known=known
+    )
+
+
+def _metal_densities(one: Judged) -> tuple[float, float]:
+    """(usual, worn) probability densities of a metal's rise over the new oil."""
+    base = one.new if one.new is not None and one.new_is_measured else 0.0
+    middle = log(_USUAL_METAL[one.property])
+    at = log(max(one.value - base, 0.2 * _USUAL_METAL[one.property]))
+    law = {"=": norm.pdf, "~": norm.pdf, "<": norm.cdf, ">": norm.sf}[one.op]
+    usual = float(law(at, middle, _SPREAD_USUAL))
+    worn = float(law(at, middle + log(_WORN), _SPREAD_WORN))
+    return usual, worn
 
 
 def _water(case: Case, judged: dict[str, Judged]) -> Found:

@@ -66,7 +66,7 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
             key="inlet.measured",
             node=Node.INLET_PRESSURE,
             likelihood=_with_starts(
-                _states(regime.median, u, check.limit, trust=1 - MISREAD), measured.cold
+                _states(regime.median, u, check.limit, trust=1 - MISREAD), regime, measured.cold
             ),
             statement=_regime_words(regime, check.limit, measured.cold),
             sources=_source(aligned),
@@ -80,16 +80,24 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     ]
 
 
-def _with_starts(likelihood: dict[str, float], cold: Regime | None) -> dict[str, float]:
-    """Cold starts near vapour pressure count towards that state, by the hours they add up to.
+def _with_starts(
+    likelihood: dict[str, float], warm: Regime, cold: Regime | None
+) -> dict[str, float]:
+    """Times below the limit count towards "low" and "near vapour", though the median holds.
 
-    An hour in all makes "near vapour" about half as probable a description as the warm state.
+    Of cold starts by the hours they add up to: an hour near vapour, or ten below the limit, make
+    that state about half as probable a description as the warm one. Of warm running by its share:
+    a tenth of the time does the same. Judgement.
     """
-    if cold is None or cold.near_vapour <= 0.0:
-        return likelihood
-    hours = cold.hours * cold.near_vapour
-    near = max(likelihood["near vapour"], 0.9 * hours / (hours + 1.0))
-    return likelihood | {"near vapour": near}
+    low, near = likelihood["low"], likelihood["near vapour"]
+    low = max(low, 0.9 * warm.below_limit / (warm.below_limit + 0.1))
+    near = max(near, 0.9 * warm.near_vapour / (warm.near_vapour + 0.03))
+    if cold is not None:
+        hours = cold.hours * cold.below_limit
+        low = max(low, 0.9 * hours / (hours + 10.0))
+        hours = cold.hours * cold.near_vapour
+        near = max(near, 0.9 * hours / (hours + 1.0))
+    return likelihood | {"low": low, "near vapour": near}
 
 
 def _regime_words(regime: Regime, limit: float, cold: Regime | None) -> str:
@@ -98,6 +106,13 @@ def _regime_words(regime: Regime, limit: float, cold: Regime | None) -> str:
         f"{regime.median / 1e5:.2f} bar(a), 5 to 95 % {regime.p05 / 1e5:.2f} to "
         f"{regime.p95 / 1e5:.2f} bar(a); limit {limit / 1e5:.2f} bar(a)."
     )
+    if regime.median >= limit and regime.below_limit > 0.01:
+        words += f" Below the limit for {100 * regime.below_limit:.0f} % of that time."
+    if cold is not None and cold.hours * cold.below_limit >= 0.5:
+        words += (
+            f" With cold oil below the limit for {cold.hours * cold.below_limit:.1f} h of "
+            f"{cold.hours:.1f} h."
+        )
     if cold is not None and cold.near_vapour > 0.0:
         words += (
             f" With cold oil below {NEAR_VAPOUR / 1e5:.2f} bar(a) for "
@@ -181,10 +196,11 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
     cold = check.cold
     measured = check.measured.cold if check.measured is not None else None
     if measured is not None and check.limit is not None:
-        share = measured.below_limit
+        hours = measured.hours * measured.below_limit
+        share = max(measured.below_limit, hours / (hours + 2.0))
         words = (
             f"With cold oil the measured inlet pressure is below the limit for "
-            f"{100 * share:.0f} % of {measured.hours:.1f} h; "
+            f"{100 * measured.below_limit:.0f} % of {measured.hours:.1f} h; "
             f"lowest {measured.lowest / 1e5:.2f} bar(a)."
         )
     elif cold is not None:
@@ -199,7 +215,7 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
         )
     # a clean line that holds at the cold start clears the cold oil of being the cause
     clean = cold.below_limit if cold is not None else 0.5
-    yes = 0.15 + 0.7 * share * (0.4 + 0.6 * clean)
+    yes = 0.15 + 0.7 * share * (0.6 + 0.4 * clean)
     return EvidenceItem(
         key="inlet.cold",
         node=Node.COLD_OIL,

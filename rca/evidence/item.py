@@ -76,13 +76,16 @@ class Node(StrEnum):
     WRONG_FLUID = "additive or viscosity step"
     LOW_CONDUCTIVITY = "oil conductivity low"
     CHLORINE = "chlorine in the oil"
+    FLUID_ETCHES = "fluid known for electrochemical erosion"  # phosphate ester
     # Damage, states "no", "yes".
     PITTING_INLET = "pitting on inlet-side zones"
     PITTING_TRANSITION = "pitting where pressure rises"  # transition land, start of discharge
     PITTING_BORES = "pitting in cylinder bores"
     EDGE_EROSION = "jet erosion at edges"
+    METERING_EDGE_EROSION = "erosion of metering edges"  # of servo and relief valves
     CHAR_DISCHARGE = "burning on discharge-side parts"
     CHAR_INLET = "burning on inlet-side parts"
+    VALVE_HEAT = "heat marks at a throttling valve"
     SEAL_HARDENED = "hardened seal"
     SPARK_MARKS = "spark marks"
     FILTER_SCORCHED = "scorched filter medium"
@@ -90,10 +93,12 @@ class Node(StrEnum):
     SMEARED = "smeared or scuffed running surfaces"
     HOUSING_TRACK = "housing wear track"
     CORROSION_PITS = "corrosion"
-    FRACTURED = "fracture"
+    FRACTURED = "fracture"  # of running parts: pistons, shaft, plates, bearings
+    HOUSING_CRACKED = "housing cracked or burst"
     VARNISH_FILM = "varnish film on parts"
     NO_DAMAGE = "no damage found"
     # Sound and sight, states "no", "yes".
+    MILKY = "oil seen milky"  # air or water: the sign alone does not say which
     MILKY_CLEARS = "milky oil that clears"
     MILKY_STAYS = "milky oil that stays"
     FOAM = "foam on the reservoir"

@@ -131,11 +131,11 @@ def test_more_extent_weighs_more_and_more_looks_miss_less(small_case: Case) -> N
         for extent in ("none", "slight", "moderate", "severe")
     ]
     assert grades == sorted(grades)
-    one = with_findings(small_case, finding("1", "servo valve", "burn mark", "none"))
+    one = with_findings(small_case, finding("1", "servo valve", "carbon deposit", "none"))
     three = with_findings(
         small_case,
-        finding("1", "servo valve", "burn mark", "none"),
-        finding("2", "relief valve", "burn mark", "none"),
+        finding("1", "servo valve", "carbon deposit", "none"),
+        finding("2", "relief valve", "charred seal", "none"),
         finding("3", "discharge kidney", "burn mark", "none"),
     )
     assert ratio(items(three)[Node.CHAR_DISCHARGE]) < ratio(items(one)[Node.CHAR_DISCHARGE]) < 1
@@ -148,9 +148,32 @@ def test_a_part_named_as_a_whole_says_less_than_a_place(small_case: Case) -> Non
     assert ratio(place[Node.PITTING_TRANSITION]) > 10
 
 
-def test_milky_alone_says_little_since_water_looks_the_same(small_case: Case) -> None:
+def test_milky_speaks_of_a_node_that_water_and_air_share(small_case: Case) -> None:
     seen = items(with_findings(small_case, finding("1", "reservoir", "milky oil", "severe")))
-    assert 1 < ratio(seen[Node.MILKY_CLEARS]) < 5
+    assert ratio(seen[Node.MILKY]) > 1
+    assert Node.MILKY_CLEARS not in seen
+
+
+def test_a_zone_called_undamaged_was_looked_at_for_its_signs(small_case: Case) -> None:
+    for extent in ("none", "severe"):
+        clean = items(with_findings(small_case, finding("1", "inlet kidney", "no damage", extent)))
+        assert ratio(clean[Node.PITTING_INLET]) < 1
+        assert ratio(clean[Node.NO_DAMAGE]) > 1
+
+
+def test_heat_at_a_valve_is_not_burning_on_the_pump(small_case: Case) -> None:
+    seen = items(with_findings(small_case, finding("1", "relief valve", "heat tint", "severe")))
+    assert ratio(seen[Node.VALVE_HEAT]) > 10
+    assert isinstance(seen[Node.CHAR_DISCHARGE], NotAssessed)
+
+
+def test_a_strainer_full_of_sludge_is_a_clogged_strainer(small_case: Case) -> None:
+    full = items(with_findings(small_case, finding("1", "strainer", "sludge", "severe")))
+    some = items(with_findings(small_case, finding("1", "strainer", "sludge", "slight")))
+    clean = items(with_findings(small_case, finding("1", "strainer", "sludge", "none")))
+    node = Node.STRAINER_FOUND_CLOGGED
+    assert ratio(full[node]) > 10
+    assert 2 > ratio(some[node]) > 1 > ratio(clean[node])
 
 
 @pytest.mark.parametrize("sign", list(Sign))
@@ -179,7 +202,7 @@ def test_every_pump_kind_is_drawn_and_every_finding_is_in_the_table(
 
 def test_a_look_where_the_sign_shows_first_misses_less(small_case: Case) -> None:
     seal = items(with_findings(small_case, finding("1", "piston seal", "charred seal", "none")))
-    valve = items(with_findings(small_case, finding("1", "servo valve", "burn mark", "none")))
+    valve = items(with_findings(small_case, finding("1", "servo valve", "carbon deposit", "none")))
     assert ratio(seal[Node.CHAR_DISCHARGE]) < ratio(valve[Node.CHAR_DISCHARGE]) < 1
 
 
