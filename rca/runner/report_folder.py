@@ -23,13 +23,14 @@ MARK = "results.json"  # a folder without it was not written by this program
 
 
 @contextmanager
-def whole_folder(out: Path) -> Iterator[Path]:
+def whole_folder(out: Path, *, mark: str = MARK) -> Iterator[Path]:
     """A folder to build in; becomes ``out`` only if the block ends without an exception.
 
+    ``mark`` is the file by which a folder of the same kind is known.
     Raises ArchiveError where ``out`` exists and is not a report folder, or can't be written.
     """
     out = Path(os.path.abspath(out))  # noqa: PTH100  resolve() would follow a link away
-    _refuse_foreign(out)
+    _refuse_foreign(out, mark)
     sweep(out)
     partial = out.with_name(f".{out.name}.{os.getpid()}.partial")
     try:
@@ -61,12 +62,12 @@ def sweep(out: Path) -> None:
             shutil.rmtree(entry, ignore_errors=True)
 
 
-def _refuse_foreign(out: Path) -> None:
+def _refuse_foreign(out: Path, mark: str) -> None:
     if out.is_symlink() or (out.exists() and not out.is_dir()):
         raise ArchiveError(f"{out} exists and is not a folder. Give another place with --out.")
-    if out.is_dir() and any(out.iterdir()) and not (out / MARK).is_file():
+    if out.is_dir() and any(out.iterdir()) and not (out / mark).is_file():
         raise ArchiveError(
-            f"{out} exists, is not empty and holds no report ({MARK} is missing), so it is not "
+            f"{out} exists, is not empty and holds no report ({mark} is missing), so it is not "
             "replaced. Give an empty or new folder with --out."
         )
 
