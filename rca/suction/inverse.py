@@ -1,0 +1,327 @@
+"""Resistances of the suction path out of its own record: viscous, quadratic, tank depression.
+
+Model of a running bin, with the losses taken at one reference state (warm, full flow):
+
+    p = still + offset - viscous (nu rho Q)/(nu rho Q)_ref - quadratic (rho Q^2)/(rho Q^2)_ref
+        - depression
+
+and p = still + offset at rest; all four move in time. A loss that follows viscosity is told from
+one that does not only where the oil temperature varied, a quadratic loss from a tank depression
+only where the speed varied, an offset from a depression only where the pump was also seen at rest.
+"""
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.case.model import Case
+from rca.case.series import AlignedRecord
+from rca.physics.viscosity import kinematic_viscosity
+from rca.suction.bounded_draws import bounded_mixture
+from rca.suction.budget import fluid_viscosities, oil_density, pump_flow
+from rca.suction.rows import Rows, SetAside, suction_rows
+from rca.suction.spread import Spread, spread
+from rca.suction.varying_fit import Prior, VaryingFit, fit_varying
+
+FloatArray = npt.NDArray[np.float64]
+LEAST_ROWS = 60
+MOST_KNOTS = 13
+ROWS_A_KNOT = 40
+DRAWS = 2000
+USEFUL = 0.03e5  # [Pa], an interval narrower than +/- this is of use whatever its relative width
+NARROWED = 0.5  # the record has told something where posterior over prior width is below this
+CONTRADICTION = 3.0  # standard deviations by which a loss would have to be negative
+WALKS = (0.005e5, 0.03e5, 0.15e5, 0.5e5)  # [Pa] over the whole record
+# What is believed before the record is seen; wide on purpose. Losses and depression are at least
+# zero, which is applied to the draws. The offset holds transducer, weather and level together.
+PRIORS = {
+    "viscous": Prior(mean=0.0, sd=0.5e5, walks=WALKS),
+    "quadratic": Prior(mean=0.0, sd=0.3e5, walks=WALKS[:3]),
+    "depression": Prior(mean=0.0, sd=0.2e5, walks=WALKS[:3]),
+    "offset": Prior(mean=0.0, sd=0.1e5, walks=(0.005e5, 0.015e5, 0.05e5, 0.15e5)),
+}
+NAMES = tuple(PRIORS)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Track:
+    """One unknown over the record: 5, 50 and 95 % points at the knots [Pa] at the reference."""
+
+    name: str
+    p05: tuple[float, ...]
+    p50: tuple[float, ...]
+    p95: tuple[float, ...]
+    narrowing: tuple[float, ...]  # posterior over prior width at each knot; 1: nothing learnt
+    identified: tuple[bool, ...]
+
+    @property
+    def identified_at_end(self) -> bool:
+        """Whether the record tells this unknown at its end."""
+        return self.identified[-1]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Excitation:
+    """How much the record varied, which decides what can be told apart."""
+
+    temperature_low: float  # [K], 1 % of the running bins
+    temperature_high: float  # [K], 99 %
+    viscosity_ratio: float  # largest over smallest, 1 to 99 %
+    flow_ratio: float
+    rest_rows: int
+    condition: float  # of the scaled regressors of the running bins; above 30: nearly collinear
+    correlation: tuple[tuple[str, str, float], ...]  # posterior at the end, pairs beyond 0.8
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Inverse:
+    """Resistances and offsets over the record, with 90 % credible intervals."""
+
+    knots_s: tuple[float, ...]
+    reference_flow: float  # [m3/s]
+    reference_temperature: float  # [K]
+    reference_viscosity: float  # [m2/s]
+    reference_density: float  # [kg/m3]
+    viscous: Track
+    quadratic: Track
+    depression: Track
+    offset: Track
+    total: Track  # viscous + quadratic + depression - offset: the drop itself
+    viscous_resistance: Spread  # a in dp = a nu rho Q at the end [1/m3]
+    quadratic_resistance: Spread  # b in dp = b rho Q^2 at the end [1/m4]
+    noise: float  # [Pa], one bin
+    inflation: float  # bins that carry the information of one independent bin
+    rows: int
+    rest_rows: int
+    set_aside: SetAside
+    excitation: Excitation
+    level_known: bool
+    headspace_known: bool
+    headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
+    contradicted: tuple[str, ...]  # unknowns the record asks to be negative
+    remarks: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class InverseDraws:
+    """Draws behind an ``Inverse``; arrays, not stored.
+
+    ``first`` and ``last`` are (n, 4) in the order of ``NAMES``, with losses and depression at
+    least zero at both ends.
+    """
+
+    first: FloatArray
+    last: FloatArray
+    fit: VaryingFit
+    rows: Rows
+    regressors: FloatArray  # (rows, 4)
+
+
+def estimate_resistances(
+    case: Case, aligned: AlignedRecord, *, seed: int
+) -> tuple[Inverse, InverseDraws] | str:
+    """Resistances over the record, or in words why there are none.
+
+    Errs: a pump set back draws less than speed times displacement, so a resistance comes out too
+    small; a loss between viscous and quadratic (transitional flow) is shared between the two.
+    """
+    rows = suction_rows(case, aligned)
+    if isinstance(rows, str):
+        return f"missing: {rows}"
+    if int(rows.running.sum()) < LEAST_ROWS:
+        return f"fewer than {LEAST_ROWS} usable bins with the pump running"
+    flow, temperature = reference_state(case, rows)
+    viscosities = fluid_viscosities(case)
+    assert viscosities is not None  # rows exist
+    nu, rho = float(kinematic_viscosity(temperature, *viscosities)), oil_density(case, temperature)
+    x = regressors(rows, flow, nu, rho)
+    y = rows.pressure - rows.still
+    knots = _knots(rows)
+    fit = fit_varying(rows.time, y, x, knots, tuple(PRIORS.values()))
+    rng = np.random.default_rng(seed)
+    first, last, contradicted = _ends(fit, rng)
+    tracks = _tracks(fit, rng)
+    aside = replace(rows.set_aside, outliers=int((~fit.kept).sum()))
+    inverse = Inverse(
+        knots_s=tuple(float(k) for k in knots),
+        reference_flow=flow,
+        reference_temperature=temperature,
+        reference_viscosity=nu,
+        reference_density=rho,
+        viscous=tracks["viscous"],
+        quadratic=tracks["quadratic"],
+        depression=tracks["depression"],
+        offset=tracks["offset"],
+        total=tracks["total"],
+        viscous_resistance=spread(last[:, 0] / (nu * rho * flow)),
+        quadratic_resistance=spread(last[:, 1] / (rho * flow**2)),
+        noise=fit.noise,
+        inflation=fit.inflation,
+        rows=int(rows.running.sum()),
+        rest_rows=int((~rows.running).sum()),
+        set_aside=aside,
+        excitation=_excitation(rows, x, last),
+        level_known=rows.level_known,
+        headspace_known=rows.headspace_known,
+        headspace_drop=rows.headspace_drop,
+        contradicted=contradicted,
+        remarks=_remarks(rows, aside),
+    )
+    return inverse, InverseDraws(first=first, last=last, fit=fit, rows=rows, regressors=x)
+
+
+def reference_state(case: Case, rows: Rows) -> tuple[float, float]:
+    """Flow [m3/s] and temperature [K] the losses are stated at: the case's, else the median."""
+    nominal = pump_flow(case)
+    flow = float(nominal) if nominal is not None and float(nominal) > 0 else None
+    temperature = case.fluid.temperature
+    return (
+        flow if flow is not None else float(np.median(rows.flow[rows.running])),
+        temperature.value
+        if temperature is not None
+        else float(np.median(rows.temperature[rows.running])),
+    )
+
+
+def regressors(rows: Rows, flow: float, nu: float, rho: float) -> FloatArray:
+    """Columns of viscous, quadratic, depression and offset for each row, one at the reference."""
+    run = rows.running.astype(float)
+    viscous = rows.nu * rows.rho * rows.flow / (nu * rho * flow)
+    quadratic = rows.rho * rows.flow**2 / (rho * flow**2)
+    return np.column_stack([-viscous * run, -quadratic * run, -run, np.ones_like(run)])
+
+
+def _knots(rows: Rows) -> FloatArray:
+    """Knots evenly in time over the running bins, no more than the bins can carry."""
+    time = rows.time[rows.running]
+    number = int(np.clip(time.size // ROWS_A_KNOT, 1, MOST_KNOTS))
+    if number == 1:
+        return np.array([0.5 * (time[0] + time[-1])])
+    return np.linspace(time[0], time[-1], number)
+
+
+def _ends(
+    fit: VaryingFit, rng: np.random.Generator
+) -> tuple[FloatArray, FloatArray, tuple[str, ...]]:
+    """Draws at the first and the last knot, losses and depression not negative at both.
+
+    Where the record asks for a negative one beyond three standard deviations, it is named.
+    """
+    p, last = len(NAMES), fit.knots.size - 1
+    places = np.r_[0:p, last * p : (last + 1) * p] if last else np.arange(p)
+    draws, distance, active = _bounded_at(fit, places, rng)
+    below = np.atleast_1d(active.reshape(-1, p).any(axis=0))
+    named = tuple(n for n, bad in zip(NAMES, below, strict=True) if bad)
+    contradicted = (named or ("the sum of the losses",)) if distance > CONTRADICTION else ()
+    return draws[:, :p], draws[:, -p:], contradicted
+
+
+def _bounded_at(
+    fit: VaryingFit, places: npt.NDArray[np.int64], rng: np.random.Generator
+) -> tuple[FloatArray, float, npt.NDArray[np.bool_]]:
+    bounded = places % len(NAMES) != NAMES.index("offset")
+    return bounded_mixture(
+        fit.weights,
+        fit.means[:, places],
+        fit.covariances[:, places[:, None], places],
+        bounded,
+        DRAWS,
+        rng,
+    )
+
+
+def _prior_draws(knots: int, rng: np.random.Generator) -> FloatArray:
+    """Draws of what was believed before, same shape and same signs as the posterior's."""
+    number = 4000
+    out = np.empty((number, knots, len(PRIORS)))
+    for j, prior in enumerate(PRIORS.values()):
+        walk = rng.choice(prior.walks, number)[:, None] / np.sqrt(max(knots - 1, 1))
+        first = rng.normal(prior.mean, prior.sd, (number, 1))
+        steps = walk * rng.standard_normal((number, knots - 1))
+        out[:, :, j] = np.cumsum(np.hstack([first, steps]), axis=1)
+    return out
+
+
+def _tracks(fit: VaryingFit, rng: np.random.Generator) -> dict[str, Track]:
+    """Every unknown and their sum at every knot, bounds applied at that knot."""
+    p, knots = len(NAMES), fit.knots.size
+    sums = np.array([1.0, 1.0, 1.0, -1.0])
+    rows: dict[str, list[tuple[float, ...]]] = {name: [] for name in (*NAMES, "total")}
+    prior = _prior_draws(knots, rng)
+    for k in range(knots):
+        after, _, _ = _bounded_at(fit, np.arange(k * p, (k + 1) * p), rng)
+        before = prior[:, k][(prior[:, k, :3] >= 0.0).all(axis=1)]
+        for name, a, b in zip(
+            (*NAMES, "total"),
+            np.column_stack([after, after @ sums]).T,
+            np.column_stack([before, before @ sums]).T,
+            strict=True,
+        ):
+            low, mid, high = (float(v) for v in np.quantile(a, [0.05, 0.5, 0.95]))
+            width = float(np.subtract(*np.quantile(b, [0.95, 0.05])))
+            rows[name].append((low, mid, high, (high - low) / width))
+    return {name: _track(name, values) for name, values in rows.items()}
+
+
+def _track(name: str, values: list[tuple[float, ...]]) -> Track:
+    low, mid, high, narrowing = zip(*values, strict=True)
+    return Track(
+        name=name,
+        p05=low,
+        p50=mid,
+        p95=high,
+        narrowing=narrowing,
+        identified=tuple(
+            ratio < NARROWED and 0.5 * (c - a) < max(USEFUL, 0.3 * abs(b))
+            for a, b, c, ratio in values
+        ),
+    )
+
+
+def _excitation(rows: Rows, x: FloatArray, last: FloatArray) -> Excitation:
+    run = rows.running
+    cold, hot = np.quantile(rows.temperature[run], [0.01, 0.99])
+    nu = np.quantile(rows.nu[run], [0.01, 0.99])
+    flow = np.quantile(rows.flow[run], [0.01, 0.99])
+    columns = x[run][:, :3]
+    scaled = columns / np.linalg.norm(columns, axis=0)
+    singular = np.linalg.svd(scaled.T @ scaled, compute_uv=False)
+    with np.errstate(divide="ignore"):
+        condition = float(np.sqrt(singular[0] / max(singular[-1], 1e-30)))
+    between = np.atleast_2d(np.corrcoef(last.T))
+    pairs = [
+        (NAMES[i], NAMES[j], float(between[i, j]))
+        for i in range(len(NAMES))
+        for j in range(i + 1, len(NAMES))
+        if abs(between[i, j]) > 0.8
+    ]
+    return Excitation(
+        temperature_low=float(cold),
+        temperature_high=float(hot),
+        viscosity_ratio=float(nu[1] / nu[0]),
+        flow_ratio=float(flow[1] / flow[0]),
+        rest_rows=int((~run).sum()),
+        condition=min(condition, 1e9),
+        correlation=tuple(pairs),
+    )
+
+
+def _remarks(rows: Rows, aside: SetAside) -> tuple[str, ...]:
+    said = []
+    turning = int(rows.running.sum()) + aside.starved
+    if aside.starved:
+        said.append(
+            f"{aside.starved} of {turning} running bins lie below 0.25 bar(a), where the flow is "
+            "no longer the displacement; they are left out, so the highest losses are too."
+        )
+    if aside.reversed:
+        said.append(f"{aside.reversed} bins with the shaft or the flow reversed are left out.")
+    if aside.temperature:
+        said.append(
+            f"{aside.temperature} bins with an oil temperature outside \u221270 to 300 \u00b0C "
+            "are left out."
+        )
+    if not (~rows.running).any():
+        said.append("The pump is never seen at rest with this transducer.")
+    return tuple(said)
