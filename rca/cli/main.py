@@ -10,6 +10,7 @@ COMMANDS = {
     "new": "Make a case folder that already passes the check.",
     "check": "What of a case is usable, wrong or missing.",
     "report": "Run the notebooks, write the report folder.",
+    "compare": "Past incidents side by side: what recurs, what is alike, what helped.",
 }
 
 

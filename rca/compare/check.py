@@ -14,10 +14,11 @@ from rca.compare.open_actions import CaseActions, Register, register
 from rca.compare.outcomes import KindOutcome, outcomes
 from rca.compare.pareto import Ranking, rank
 from rca.compare.recurrence import CameBack, Recurrence, came_back, recurrences
-from rca.compare.similar import Likeness, likeness_to, most_like
+from rca.compare.similar import Likeness, likeness_to, most_like, same_finding
 from rca.compare.table import IncidentTable
 
 LIKE = 5
+OVERLAP = 0.3  # of mechanisms, from which a case is named at all; own choice
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -49,6 +50,7 @@ class Comparison:
     asked: str  # the case the likeness is asked for
     alike: tuple[Likeness, ...]
     not_comparable: int  # incidents that share nothing looked at with it
+    same_finding: tuple[tuple[int, float], ...]  # of those: row and overlap of mechanisms
     outcomes: tuple[KindOutcome, ...]
     register: Register
 
@@ -68,6 +70,7 @@ def compare_cases(
     """
     watched = watches(table, given, until=until, since=since)
     row = _row_of(table, like)
+    apart = _not_comparable(table, row)
     alike = most_like(table, row, count=LIKE) if row is not None else ()
     knowledge = sorted(set(table.knowledge), key=lambda k: (-table.knowledge.count(k), k))
     return Comparison(
@@ -84,7 +87,8 @@ def compare_cases(
         groups=tuple(_group(table, watched, name) for name in knowledge),
         asked=table.ids[row] if row is not None else "",
         alike=alike,
-        not_comparable=_not_comparable(table, row),
+        not_comparable=len(apart),
+        same_finding=_same_finding(table, row, apart),
         outcomes=outcomes(table, until=until),
         register=register(case_actions(table), today=until),
     )
@@ -129,8 +133,18 @@ def _row_of(table: IncidentTable, like: str) -> int | None:
     return max(dated, key=lambda k: (table.days[k], table.ids[k]), default=None)
 
 
-def _not_comparable(table: IncidentTable, row: int | None) -> int:
+def _not_comparable(table: IncidentTable, row: int | None) -> tuple[int, ...]:
     if row is None:
-        return len(table)
+        return ()
     _, compared = likeness_to(table, row)
-    return int((compared == 0).sum()) - int(compared[row] == 0)
+    return tuple(int(k) for k in np.flatnonzero(compared == 0) if k != row)
+
+
+def _same_finding(
+    table: IncidentTable, row: int | None, apart: Sequence[int]
+) -> tuple[tuple[int, float], ...]:
+    if row is None:
+        return ()
+    overlap = same_finding(table, row)
+    ranked = sorted(apart, key=lambda k: (-overlap[k], table.ids[k]))
+    return tuple((k, float(overlap[k])) for k in ranked[:LIKE] if overlap[k] >= OVERLAP)

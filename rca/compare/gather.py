@@ -37,6 +37,7 @@ class Gathered:
     incidents: tuple[Incident, ...]
     refused: tuple[Refused, ...] = ()
     replaced: tuple[str, ...] = ()  # sources of copies and older revisions of a case
+    not_reweighed: tuple[str, ...] = ()  # sources whose evidence can't be weighed again, and why
 
 
 @dataclass(frozen=True, slots=True)

@@ -235,3 +235,15 @@ def field_words(name: str, value: float) -> str:
     }[name]
     shown = value - 273.15 if name == "oil temperature" else value * factor
     return f"{shown:.{digits}f} {unit}"
+
+
+def same_finding(table: IncidentTable, row: int) -> FloatArray:
+    """How far each incident's mechanisms overlap with one's, [n], 0 to 1.
+
+    The sum of the smaller probabilities over the sum of the larger. It compares conclusions, so it
+    serves only where nothing seen can be compared.
+    """
+    one, all_ = np.nan_to_num(table.mechanisms[row]), np.nan_to_num(table.mechanisms)
+    larger = np.maximum(one, all_).sum(axis=1)
+    smaller = np.minimum(one, all_).sum(axis=1)
+    return np.asarray(np.divide(smaller, larger, out=np.zeros(len(table)), where=larger > 0))
