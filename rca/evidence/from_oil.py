@@ -63,8 +63,6 @@ _RULES = (
     _Rule(Node.WRONG_FLUID, ("Zn", "P", "Ca", "Mg", "Mo", "B"), 0, 0.20, 0.03, 2.0),
     _Rule(Node.CHLORINE, ("Cl",), 1, 0.20, 0.06),
 )
-# noise floors within which a routine value passes for normal in daily practice; judgement
-_ROUTINE = {"viscosity_40": 4.0, "acid_number": 1.0, "oxidation": 2.5}
 # usual level of a wear metal in service [mg/kg], about a quarter of the limits of the programme
 # named in the limits file; tin like chromium: judgement
 _USUAL_METAL = {"Fe": 5.0, "Cu": 2.5, "Pb": 2.0, "Cr": 1.2, "Sn": 1.2}
@@ -183,14 +181,14 @@ def _colour(check: OilCheck | None, fresh: float) -> list[Found]:
         return [
             NotAssessed(key="oil.dark_fast", node=Node.OIL_DARK_FAST, missing=missing),
             NotAssessed(key="oil.dark_slow", node=Node.OIL_DARK_SLOW, missing=missing),
-            NotAssessed(key="oil.routine", node=Node.ROUTINE_NORMAL_DARK, missing=missing),
         ]
     fast, slow = _speed(dark, fresh)
-    found: list[Found] = [
+    # dark oil with flat routine values is no item of its own: the darkness weighs here, and the
+    # flat acid number, oxidation and viscosity weigh against oxidation by themselves
+    return [
         _colour_item("oil.dark_fast", Node.OIL_DARK_FAST, dark, fast),
         _colour_item("oil.dark_slow", Node.OIL_DARK_SLOW, dark, slow),
     ]
-    return [*found, _routine(check, dark)]
 
 
 def _speed(dark: Darkening, fresh: float) -> tuple[dict[str, float], dict[str, float]]:
@@ -225,37 +223,6 @@ def _colour_item(
             f"{dark.new:g}{when}."
         ),
         sources=(dark.source,),
-        group=Group.OIL,
-        common_cause=f"bottle {dark.sample}",
-        basis=Basis.LABORATORY,
-        absent=likelihood["no"] > likelihood["yes"],
-    )
-
-
-def _routine(check: OilCheck, dark: Darkening) -> Found:
-    """Dark oil with flat routine values; light oil says nothing of this."""
-    tested = [check.judged[name] for name in _ROUTINE if name in check.judged]
-    known = [one for one in tested if one.stands_out is not None]
-    key, node = "oil.routine", Node.ROUTINE_NORMAL_DARK
-    if len(known) < 2:
-        missing = "viscosity and acid number of used and new oil beside its colour"
-        return NotAssessed(key=key, node=node, missing=missing)
-    flat = all(abs(one.stands_out or 0.0) < _ROUTINE[one.property] for one in known)
-    if dark.change < DARK:
-        likelihood = {"no": 0.7, "yes": 0.3}
-    else:
-        likelihood = {"no": 0.2, "yes": 0.85} if flat else {"no": 0.8, "yes": 0.15}
-    beside = ", ".join(
-        f"{_short(one)} ({one.change:+.3g} from new, noise floor {one.noise:.2g})" for one in known
-    )
-    return EvidenceItem(
-        key=key,
-        node=node,
-        likelihood=likelihood,
-        statement=(
-            f"Colour {dark.text} (new {dark.new:g}) beside {beside} in sample {dark.sample}."
-        ),
-        sources=(dark.source, *(one.source for one in known)),
         group=Group.OIL,
         common_cause=f"bottle {dark.sample}",
         basis=Basis.LABORATORY,

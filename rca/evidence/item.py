@@ -62,7 +62,6 @@ class Node(StrEnum):
     SOOT = "soot in the oil"
     NITRATION = "nitration"
     OXIDATION_PRODUCTS = "oxidation or acid number up"
-    ROUTINE_NORMAL_DARK = "oil dark with normal routine values"
     VISCOSITY_DOWN = "viscosity down"
     VISCOSITY_UP = "viscosity up"
     FLASH_DOWN = "flash point down"

@@ -144,7 +144,7 @@ def test_groove_jet_erosion_with_a_healthy_inlet_is_neither() -> None:
 def test_dark_oil_from_a_throttle_is_not_micro_dieseling() -> None:
     found = verdict(
         item(Node.OIL_DARK_FAST, YES, "bottle"),
-        item(Node.ROUTINE_NORMAL_DARK, YES, "bottle"),
+        item(Node.OXIDATION_PRODUCTS, NO, "bottle"),
         item(Node.THROTTLE_HOT_FOUND, YES),
         item(Node.CHAR_DISCHARGE, NO),
         item(Node.INLET_PRESSURE, HEALTHY),
@@ -271,7 +271,7 @@ def test_every_node_an_item_may_speak_of_has_the_same_states_everywhere() -> Non
 
 def test_oil_alone_never_decides_for_micro_dieseling() -> None:
     """Four looks at one state, products of burning in the oil, have another way to come about."""
-    nodes = (Node.SOOT, Node.NITRATION, Node.OIL_DARK_FAST, Node.ROUTINE_NORMAL_DARK)
+    nodes = (Node.SOOT, Node.NITRATION, Node.OIL_DARK_FAST)
     sharp = {"no": 0.001, "yes": 0.999}
     all_in = posterior(K, [item(n, sharp, "one bottle") for n in nodes]).discharge[0]
     prior = posterior(K, []).discharge[0]
