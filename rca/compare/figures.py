@@ -7,7 +7,7 @@ from matplotlib.ticker import MaxNLocator
 
 from rca.compare.check import Comparison
 from rca.compare.pareto import Ranking, ordered
-from rca.compare.recurrence import Recurrence
+from rca.compare.recurrence import FEWEST_FOR_TREND, Recurrence
 from rca.compare.table import IncidentTable
 from rca.figures.style import DISCHARGE, GREY, INK, PALE, SUCTION, new_figure
 
@@ -32,7 +32,7 @@ def figures_comparison(table: IncidentTable, check: Comparison) -> dict[str, Fig
             if ranking.bars:
                 drawn[f"compare-{ranking.by}-{number}"] = bars(ranking)
     fleet = check.recurrences[0]
-    if fleet.ages:
+    if len(fleet.ages) >= FEWEST_FOR_TREND:
         drawn["compare-course"] = course(fleet)
     return drawn
 

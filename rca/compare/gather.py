@@ -5,13 +5,14 @@ be used is named with the reason and never stops the others.
 """
 
 import hashlib
-import json
 import os
 import zipfile
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar
+
+import msgspec
 
 from rca.base.errors import ArchiveError
 from rca.compare.incident import Incident, read_incident
@@ -93,7 +94,7 @@ def find(place: Path) -> Iterator[Found]:
                 yield Found(folder / name, bundle=name.endswith(".zip"))
 
 
-def load(found: Found) -> tuple[Any, str, str]:
+def load(found: Found) -> tuple[dict[str, Any], str, str]:
     """Plain JSON of one results file, its SHA-256, and when its run ended ("" where unknown).
 
     Raises ArchiveError for anything unreadable, too large or not JSON.
@@ -107,16 +108,39 @@ def load(found: Found) -> tuple[Any, str, str]:
             record = _read_up_to(beside) if beside.is_file() else b"{}"
     except (OSError, zipfile.BadZipFile, RuntimeError, NotImplementedError) as error:
         raise ArchiveError(f"can't be read: {error}") from error
-    run = _json(record, RECORD)
-    ended = run.get("ended", "") if isinstance(run, dict) else ""
-    return _json(content, RESULTS), hashlib.sha256(content).hexdigest(), str(ended)
+    run = _json(record, RECORD, _Run)
+    parts = _json(content, RESULTS, _Results)
+    plain = {name: getattr(parts, name) for name in parts.__struct_fields__}
+    return plain, hashlib.sha256(content).hexdigest(), str(run.ended or "")
 
 
-def _json(content: bytes, name: str) -> Any:
+class _Results(msgspec.Struct):
+    """The parts of ``results.json`` that are compared; the checks' own numbers are passed over."""
+
+    format: Any = None
+    case: Any = None
+    verdict: Any = None
+    causes: Any = None
+    evidence: Any = None
+    actions: Any = None
+    record: Any = None
+    invented: Any = None
+
+
+class _Run(msgspec.Struct):
+    """The part of ``record.json`` that is asked for."""
+
+    ended: Any = None
+
+
+T = TypeVar("T", _Results, _Run)
+
+
+def _json(content: bytes, name: str, kind: type[T]) -> T:
     try:
-        return json.loads(content)
-    except (ValueError, RecursionError) as error:
-        raise ArchiveError(f"{name} is not JSON: {error}") from error
+        return msgspec.json.decode(content, type=kind)
+    except (msgspec.MsgspecError, UnicodeDecodeError, RecursionError) as error:
+        raise ArchiveError(f"{name} is not JSON of the expected shape: {error}") from error
 
 
 def _read_up_to(path: Path) -> bytes:

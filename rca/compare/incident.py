@@ -119,7 +119,7 @@ def read_incident(plain: object, *, source: str, sha256: str = "", ended: str = 
         },
         downtime_h=_downtime(descriptor.get("downtime")),
         cost=read_cost(str(descriptor.get("cost") or "")),
-        invented="invented" in top or "(invented)" in str(case.get("site", "")),
+        invented=bool(top.get("invented")) or "(invented)" in str(case.get("site", "")),
         actions=tuple(_action(a, n) for n, a in enumerate(_rows(top.get("actions"), "actions"))),
         source=source,
         sha256=sha256,

@@ -2,6 +2,7 @@
 
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.compare.check import Comparison
+from rca.compare.counted import counted
 from rca.compare.gather import Refused
 from rca.compare.panels_actions import actions_panel, outcomes_panel
 from rca.compare.panels_groups import group_panels
@@ -53,7 +54,7 @@ def _time(table: IncidentTable, check: Comparison, figures: frozenset[str]) -> P
         key="compare.time",
         title="Incidents in time",
         question="What happened when, on which machine, from which side?",
-        answer=f"{check.n} incidents on {machines} machines{span}.",
+        answer=f"{counted(check.n, 'incident')} on {counted(machines, 'machine')}{span}.",
         figures=tuple(
             FigureRef(
                 name="compare-time",
@@ -244,11 +245,12 @@ def _read(
                 rows=tuple((source,) for source in replaced),
             )
         )
-    answer = f"{check.n} cases; {len(refused)} files could not be used"
+    left = counted(len(refused), "file")
     return Panel(
         key="compare.read",
         title="What was read",
         question="Which files stand behind this, and which could not be used?",
-        answer=f"{answer}; {len(replaced)} copies or older revisions are not counted.",
+        answer=f"{counted(check.n, 'case')}; {left} could not be used; "
+        f"{len(replaced)} copies or older revisions are not counted.",
         tables=tuple(tables),
     )

@@ -2,6 +2,7 @@
 
 from rca.base.panel import Column, Panel, Table
 from rca.compare.check import Comparison
+from rca.compare.counted import counted
 from rca.compare.open_actions import Register, Row, Standing
 from rca.compare.outcomes import KindOutcome, Result
 from rca.compare.table import IncidentTable
@@ -19,8 +20,8 @@ def outcomes_panel(table: IncidentTable, check: Comparison) -> Panel:
     back = sum(g.count(Result.CAME_BACK) for g in check.outcomes)
     held = sum(g.count(Result.HELD) for g in check.outcomes)
     answer = (
-        f"{done} actions were done: after {back} the cause came back, after {held} the machine "
-        f"stayed silent long enough to count, {done - back - held} can't be told yet."
+        f"{counted(done, 'action')} done: after {back} the cause came back, after {held} the "
+        f"machine stayed silent long enough to count, {done - back - held} can't be told yet."
         if done
         else "No case records an action that was done."
     )
@@ -151,8 +152,7 @@ def register_words(found: Register) -> str:
     if not found.rows:
         return "No case has an action on record."
     parts = [f"{n} {s.value}" for s in Standing if (n := found.count(s))]
-    plural = "s" if len(found.rows) > 1 else ""
-    return f"{len(found.rows)} action{plural} as of {found.today}: {', '.join(parts)}."
+    return f"{counted(len(found.rows), 'action')} as of {found.today}: {', '.join(parts)}."
 
 
 def _row(r: Row) -> tuple[str, ...]:

@@ -3,11 +3,13 @@
 from rca.base.panel import Column, FigureRef, Panel, Table
 from rca.compare.base_rates import CAUTION, ENOUGH, BaseRate
 from rca.compare.check import Comparison, KnowledgeGroup
+from rca.compare.counted import counted
 from rca.compare.pareto import FEW, Bar, Ranking, ordered
 from rca.figures.numbers import share
 from rca.stats.event_rate import Estimate
 
 GROUPS_SHOWN = 4
+FEWEST_FOR_RATES = 5  # fewer cases give base rates not worth a table
 
 
 def group_panels(check: Comparison, figures: frozenset[str]) -> tuple[Panel, ...]:
@@ -38,7 +40,7 @@ def _panels(
     several = len(check.groups) > 1
     name = f" ({group.knowledge})" if several else ""
     rankings = {r.by: r for r in group.rankings}
-    few = f" With {n} cases this is a list, not a ranking." if n < FEW else ""
+    few = f" With {counted(n, 'case')} this is a list, not a ranking." if n < FEW else ""
     causes = ordered(rankings["cause"], "count")
     return (
         Panel(
@@ -52,7 +54,6 @@ def _panels(
                     name=f"compare-{by}-{number}",
                     caption=f"Incidents by {by}.",
                     alt=f"Incidents by {by}: {_leading(rankings[by])}",
-                    width="half",
                 )
                 for by in ("mechanism", "cause")
                 if f"compare-{by}-{number}" in figures
@@ -64,7 +65,7 @@ def _panels(
                 "A cause counts where it is the likeliest and more likely than not.",
             ),
         ),
-        _rates(number, name, group, bool(causes)),
+        *((_rates(number, name, group, bool(causes)),) if n >= FEWEST_FOR_RATES else ()),
     )
 
 
@@ -148,11 +149,9 @@ def interval(e: Estimate) -> str:
 
 def _rates(number: int, name: str, group: KnowledgeGroup, has_causes: bool) -> Panel:
     n = len(group.cases)
-    enough = (
-        f"{n} cases; below {ENOUGH} of known cause they should not move a prior."
-        if n < ENOUGH
-        else f"{n} cases."
-    )
+    enough = f"{counted(n, 'case')}."
+    if n < ENOUGH:
+        enough = f"{counted(n, 'case')}; below {ENOUGH} of known cause they move no prior."
     learned = [r for r in group.base_rates if r.learned is not None]
     return Panel(
         key=f"compare.base-rates.{number}",

@@ -1,7 +1,10 @@
 """Panels of what came back and of trends."""
 
+from dataclasses import replace
+
 from rca.base.panel import Column, FigureRef, Panel, Table
 from rca.compare.check import Comparison
+from rca.compare.counted import counted
 from rca.compare.recurrence import FEWEST_FOR_TREND, SIGNIFICANT, Recurrence
 
 PER = {"machine-days": (365.25, "a machine-year"), "running hours": (1000.0, "1000 running hours")}
@@ -58,7 +61,10 @@ def came_back_panel(check: Comparison) -> Panel:
 def recurrence_panel(check: Comparison, figures: frozenset[str]) -> Panel:
     """Rates over exposure, trend tests and growth."""
     several = len(check.groups) > 1
-    rows = [*check.recurrences, *(r for g in check.groups for r in g.recurrences)]
+    rows = [*check.recurrences]
+    for group in check.groups:
+        version = f" ({group.knowledge.split(' ')[0]})" if several else ""
+        rows += [replace(r, name=f"{r.name}{version}") for r in group.recurrences]
     return Panel(
         key="compare.recurrence",
         title="How often, and is it getting better?",
@@ -83,12 +89,12 @@ def _trend_words(fleet: Recurrence) -> str:
     if fleet.rate is None:
         return "No machine was watched for any time, so there is no rate."
     words = (
-        f"{fleet.events} counted incidents in {fleet.exposure:,.0f} {fleet.unit}: "
+        f"{counted(fleet.events, 'counted incident')} in {fleet.exposure:,.0f} {fleet.unit}: "
         f"{fleet.rate.value * per:.2g} a {unit.removeprefix('a ')} "
         f"(90 % interval {fleet.rate.low * per:.2g} to {fleet.rate.high * per:.2g})."
     ).replace(",", "\u202f")
     if fleet.chosen is None:
-        return f"{words} Too few for a trend: {fleet.why_no_trend}."
+        return f"{words} Too few for a trend, which needs {FEWEST_FOR_TREND}."
     if fleet.chosen.p < SIGNIFICANT:
         way = "less often" if fleet.chosen.improving else "more often"
         return f"{words} They come {way} than before (p = {fleet.chosen.p:.2g})."
