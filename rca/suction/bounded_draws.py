@@ -8,7 +8,7 @@ from scipy.stats import multivariate_normal
 
 FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
-SWEEPS = 30
+SWEEPS = 25
 
 
 def bounded_mixture(
@@ -57,7 +57,7 @@ def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator)
             mean=-mean,
             cov=covariance,
             allow_singular=True,
-            maxpts=4000 * mean.size,
+            maxpts=2000 * mean.size,
             rng=rng,
         )
     )

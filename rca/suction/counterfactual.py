@@ -17,7 +17,8 @@ from rca.case.site import local_atmosphere
 from rca.physics.dissolved_air import released_share_in_time
 from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.budget import GRAVITY, fluid_viscosities, line_residence
-from rca.suction.explanations import CleanLine, clean_line, excesses, has_strainer
+from rca.suction.clean_line import CleanLine
+from rca.suction.explanations import excesses, has_strainer
 from rca.suction.inverse import Inverse, InverseDraws
 from rca.suction.rows import STARVED
 from rca.suction.spread import Spread, spread
@@ -122,7 +123,7 @@ class _AsFound:
         self.case, self.inverse = case, inverse
         n = found.last.shape[0]
         rng = np.random.default_rng(seed)
-        self.clean: CleanLine | None = clean_line(case, inverse)
+        self.clean: CleanLine | None = inverse.clean
         self.excess = excesses(case, inverse, found, self.clean, rng)
         self.draw = {k: v[:n] for k, v in draws(case, seed=seed, samples=n).items()}
         level = case.reservoir.level_above_inlet

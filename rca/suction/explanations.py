@@ -1,6 +1,6 @@
 """What each explanation could account for of the pressure missing at the inlet, in pascal."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from enum import StrEnum
 
 import numpy as np
@@ -13,17 +13,19 @@ from rca.suction.budget import (
     GRAVITY,
     fluid_viscosities,
     oil_density,
-    pressure_budget,
 )
+from rca.suction.clean_line import CleanLine
 from rca.suction.inverse import Inverse, InverseDraws
 from rca.suction.spread import Spread, spread
+from rca.suction.state import inlet_limit
 
 FloatArray = npt.NDArray[np.float64]
 NOTICED = 0.02e5  # [Pa], a loss smaller than this explains nothing worth mending; judgement
-LINE_U, STRAINER_U = 0.15, 0.35  # relative, of the computed losses; common practice, no source
 DEEPEST_SAG = 0.5  # [m], how far a level can fall unseen where no depth is stated; judgement
+LOW = 0.7e5  # [Pa], low for any pump, where no limit is known; common practice, no source
 WEATHER = 1.0e3  # [Pa], standard deviation of the air pressure about the site's mean
-COLD_SHARE = 0.02  # the coldest share of the running bins
+LEADS = 0.7  # an explanation is named where its probability is above this
+TOGETHER = 0.9  # those not told apart are named where together they reach this
 STEP_SHARE = 0.7  # a rise is called a step where this much of it lies between two knots
 
 
@@ -48,17 +50,6 @@ CAUSE_OF = {
     Explanation.AIR_LEAK: "air leak on the suction side",
     Explanation.DRIFTED_TRANSDUCER: "",  # no cause of a failure
 }
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class CleanLine:
-    """Losses of the line as described and clean, at the reference state [Pa]."""
-
-    viscous: float
-    viscous_u: float
-    quadratic: float
-    quadratic_u: float
-    depression: float
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -91,51 +82,16 @@ class Explanations:
     none: float  # probability that none is above NOTICED: a normal vacuum
     leading: str  # an Explanation, "normal vacuum", or "not identifiable"
     leading_probability: float
-    cold_drop: float  # [Pa], more loss at the coldest recorded running than at the reference
-    cold_drop_clean: float | None  # [Pa], of it in the clean line: viscosity alone
-    coldest: float  # [K]
-
-
-def clean_line(case: Case, inverse: Inverse) -> CleanLine | None:
-    """The clean line's losses split into a part that follows viscosity and one that does not.
-
-    Least squares over flows of 0.6 to 1 of the reference and the record's temperatures, widened to
-    at least 20 K; pipe flow in transition is neither, and is shared between the two.
-    """
-    if not case.suction_line:
-        return None
-    q0, t0 = inverse.reference_flow, inverse.reference_temperature
-    middle = 0.5 * (inverse.excitation.temperature_low + inverse.excitation.temperature_high)
-    half = max(10.0, inverse.excitation.temperature_high - middle)
-    temperatures = np.clip(np.linspace(middle - half, middle + half, 9), 204.0, 572.0)
-    t, q = np.tile(temperatures, 5), q0 * np.repeat(np.linspace(0.6, 1.0, 5), 9)
-    viscosities = fluid_viscosities(case)
-    assert viscosities is not None
-    nu = kinematic_viscosity(t, *viscosities)
-    x = np.column_stack([nu / inverse.reference_viscosity * q / q0, (q / q0) ** 2])
-    budget = pressure_budget(case, q, t)
-    split = {name: _split(x, loss) for name, loss in budget.parts}
-    kinetic = float(pressure_budget(case, q0, t0).kinetic)
-    strainers = {f"{p.index + 1} " for p in case.suction_line if p.part is PartKind.STRAINER}
-    own = np.zeros(2)
-    for name, values in split.items():
-        if any(name.startswith(s) for s in strainers):
-            own += values
-    rest = np.sum(list(split.values()), axis=0) - own
-    u = np.hypot(STRAINER_U * own, LINE_U * rest)
-    return CleanLine(
-        viscous=float(own[0] + rest[0]),
-        viscous_u=float(u[0]),
-        quadratic=float(own[1] + rest[1] + kinetic),
-        quadratic_u=float(np.hypot(u[1], LINE_U * kinetic)),
-        depression=float(np.mean(pressure_budget(case, q0, t0).breather)),
-    )
+    between: tuple[str, ...]  # explanations that together hold most, where none leads
+    coldest: float  # [K], of the running pump
+    cold_drop: float  # [Pa], more loss there than at the reference, line as found
+    cold_inlet: float  # [Pa], inlet pressure there, line as found; not below zero
 
 
 def explain(case: Case, inverse: Inverse, draws: InverseDraws, *, seed: int) -> Explanations:
     """Every explanation with what it could account for, and which is the largest."""
     rng = np.random.default_rng(seed)
-    clean = clean_line(case, inverse)
+    clean = inverse.clean
     amounts = excesses(case, inverse, draws, clean, rng)
     growth = {name: draws.last[:, j] - draws.first[:, j] for j, name in enumerate(_ORDER)}
     growth["level"] = np.full(draws.last.shape[0], _level_change(inverse, draws))
@@ -146,24 +102,34 @@ def explain(case: Case, inverse: Inverse, draws: InverseDraws, *, seed: int) -> 
     largest = np.where(table.max(axis=1) > NOTICED, table.argmax(axis=1), -1)
     chance = {name: float(np.mean(largest == j)) for j, name in enumerate(_SHARED)}
     none = float(np.mean(largest == -1))
-    cold, cold_clean, coldest = _cold(case, inverse, draws, clean)
+    cold = _cold(inverse, draws, clean, case)
     drop = spread(
         amounts["viscous"] + amounts["quadratic"] + amounts["depression"] + amounts["offset"]
     )
-    leading, probability = _leading(chance, none)
+    limit, _ = inlet_limit(case)
+    inlet = cold.inlet(draws)
+    too_cold = float(np.mean(inlet < (limit if limit is not None else LOW)))
+    if cold.clean is None or float(np.median(cold.clean)) < NOTICED:
+        too_cold = 0.0
+    leading, probability, between = _leading(chance, none, too_cold)
     return Explanations(
         drop=drop,
         counted_from="the clean line as described"
         if clean is not None
         else "the start of the record",
         clean=clean,
-        shares=_shares(case, inverse, amounts, growth, chance),
+        shares=(
+            *_shares(case, inverse, amounts, growth, chance),
+            _cold_share(cold, none * too_cold),
+            _leak_share(),
+        ),
         none=none,
         leading=leading,
         leading_probability=probability,
-        cold_drop=cold,
-        cold_drop_clean=cold_clean,
-        coldest=coldest,
+        between=between,
+        coldest=cold.temperature,
+        cold_drop=float(np.median(cold.found)),
+        cold_inlet=max(float(np.median(inlet)), 0.0),
     )
 
 
@@ -225,10 +191,6 @@ def excesses(
     }
 
 
-def _split(x: FloatArray, loss: FloatArray) -> FloatArray:
-    return np.asarray(np.maximum(np.linalg.lstsq(x, loss, rcond=None)[0], 0.0))
-
-
 def _deepest(case: Case) -> float:
     """The most a sagging level can take from the inlet before it draws air [Pa]."""
     depth = case.reservoir.oil_depth
@@ -245,27 +207,80 @@ def _level_change(inverse: Inverse, draws: InverseDraws) -> float:
     return float(np.median(still[-n:]) - np.median(still[:n]))
 
 
-def _cold(
-    case: Case, inverse: Inverse, draws: InverseDraws, clean: CleanLine | None
-) -> tuple[float, float | None, float]:
-    """Loss at the coldest running bins beyond the reference's: as found, and of the clean line."""
-    run = draws.rows.running
-    temperature = draws.rows.temperature[run]
-    coldest = float(np.quantile(temperature, COLD_SHARE))
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Cold:
+    """The coldest running: its temperature and draws of the loss beyond the reference's [Pa]."""
+
+    temperature: float
+    found: FloatArray
+    clean: FloatArray | None
+
+    def inlet(self, draws: InverseDraws) -> FloatArray:
+        """Inlet pressure there, line as found, transducer's offset taken as real."""
+        running = draws.rows.still[draws.rows.running]
+        still = float(np.median(running[-max(1, running.size // 20) :]))
+        last = draws.last
+        return np.asarray(still - last[:, :3].sum(axis=1) + last[:, 3] - self.found)
+
+
+def _cold(inverse: Inverse, draws: InverseDraws, clean: CleanLine | None, case: Case) -> _Cold:
+    coldest = draws.rows.coldest
     viscosities = fluid_viscosities(case)
     assert viscosities is not None
-    ratio = float(kinematic_viscosity(coldest, *viscosities)) / inverse.reference_viscosity
-    found = float(np.median(draws.last[:, 0])) * (ratio - 1.0)
-    return found, clean.viscous * (ratio - 1.0) if clean is not None else None, coldest
+    ratio = float(kinematic_viscosity(coldest, *viscosities)) / inverse.reference_viscosity - 1.0
+    return _Cold(
+        temperature=coldest,
+        found=draws.last[:, 0] * ratio,
+        clean=np.minimum(draws.last[:, 0], clean.viscous) * ratio if clean is not None else None,
+    )
 
 
-def _leading(chance: dict[str, float], none: float) -> tuple[str, float]:
-    best = max(chance, key=lambda name: chance[name])
-    if none > max(0.5, chance[best]):
-        return "normal vacuum", none
-    if chance[best] > 0.5:
-        return _EXPLAINED_BY[best].value, chance[best]
-    return "not identifiable", max(none, chance[best])
+def _leading(
+    chance: dict[str, float], none: float, too_cold: float
+) -> tuple[str, float, tuple[str, ...]]:
+    """The explanation that leads, its probability, and those not told apart where none does."""
+    every = {_EXPLAINED_BY[name].value: p for name, p in chance.items()}
+    every[Explanation.COLD_OIL.value] = none * too_cold
+    every["normal vacuum"] = none * (1.0 - too_cold)
+    order = sorted(every, key=lambda name: -every[name])
+    if every[order[0]] > LEADS:
+        return order[0], every[order[0]], ()
+    held: list[str] = []
+    for name in order:
+        held.append(name)
+        if sum(every[n] for n in held) >= TOGETHER:
+            break
+    return "not identifiable", every[order[0]], tuple(held)
+
+
+def _cold_share(cold: _Cold, probability: float) -> Share:
+    nothing = spread(np.zeros(2))
+    return Share(
+        explanation=Explanation.COLD_OIL,
+        cause=CAUSE_OF[Explanation.COLD_OIL],
+        amount=spread(cold.clean) if cold.clean is not None else nothing,
+        growth=nothing,
+        probability=probability,
+        identified=cold.clean is not None,
+        stepwise=False,
+        note=f"At the coldest running, {cold.temperature - 273.15:.0f} \u00b0C, in the line with "
+        "no resistance raised; at the reference temperature it explains nothing.",
+    )
+
+
+def _leak_share() -> Share:
+    nothing = spread(np.zeros(2))
+    return Share(
+        explanation=Explanation.AIR_LEAK,
+        cause=CAUSE_OF[Explanation.AIR_LEAK],
+        amount=nothing,
+        growth=nothing,
+        probability=0.0,
+        identified=True,
+        stepwise=False,
+        note="A leak lets air in and does not lower the inlet pressure; it explains none of the "
+        "drop and is not excluded by a normal one.",
+    )
 
 
 def _shares(
@@ -300,26 +315,7 @@ def _shares(
                 note=notes[name],
             )
         )
-    nothing = spread(np.zeros(2))
-    cold = Share(
-        explanation=Explanation.COLD_OIL,
-        cause=CAUSE_OF[Explanation.COLD_OIL],
-        amount=nothing,
-        growth=nothing,
-        probability=0.0,
-        identified=True,
-        stepwise=False,
-        note="Cold oil raises the loss only while it is cold; at the reference temperature it "
-        "explains nothing.",
-    )
-    leak = replace(
-        cold,
-        explanation=Explanation.AIR_LEAK,
-        cause=CAUSE_OF[Explanation.AIR_LEAK],
-        note="A leak lets air in and does not lower the inlet pressure; it explains none of the "
-        "drop and is not excluded by a normal one.",
-    )
-    return (*shares, cold, leak)
+    return tuple(shares)
 
 
 def _cause(case: Case, kind: Explanation) -> str:

@@ -20,6 +20,8 @@ from rca.case.series import AlignedRecord
 from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.bounded_draws import bounded_mixture
 from rca.suction.budget import fluid_viscosities, oil_density, pump_flow
+from rca.suction.clean_line import CleanLine, Excitation, clean_line
+from rca.suction.priors import priors_of
 from rca.suction.rows import Rows, SetAside, suction_rows
 from rca.suction.spread import Spread, spread
 from rca.suction.varying_fit import Prior, VaryingFit, fit_varying
@@ -29,19 +31,12 @@ LEAST_ROWS = 60
 MOST_KNOTS = 13
 ROWS_A_KNOT = 40
 DRAWS = 2000
+TRACK_DRAWS = 1000
+PRIOR_DRAWS = 4000
 USEFUL = 0.03e5  # [Pa], an interval narrower than +/- this is of use whatever its relative width
 NARROWED = 0.5  # the record has told something where posterior over prior width is below this
 CONTRADICTION = 3.0  # standard deviations by which a loss would have to be negative
-WALKS = (0.005e5, 0.03e5, 0.15e5, 0.5e5)  # [Pa] over the whole record
-# What is believed before the record is seen; wide on purpose. Losses and depression are at least
-# zero, which is applied to the draws. The offset holds transducer, weather and level together.
-PRIORS = {
-    "viscous": Prior(mean=0.0, sd=0.5e5, walks=WALKS),
-    "quadratic": Prior(mean=0.0, sd=0.3e5, walks=WALKS[:3]),
-    "depression": Prior(mean=0.0, sd=0.2e5, walks=WALKS[:3]),
-    "offset": Prior(mean=0.0, sd=0.1e5, walks=(0.005e5, 0.015e5, 0.05e5, 0.15e5)),
-}
-NAMES = tuple(PRIORS)
+NAMES = ("viscous", "quadratic", "depression", "offset")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -59,19 +54,6 @@ class Track:
     def identified_at_end(self) -> bool:
         """Whether the record tells this unknown at its end."""
         return self.identified[-1]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Excitation:
-    """How much the record varied, which decides what can be told apart."""
-
-    temperature_low: float  # [K], 1 % of the running bins
-    temperature_high: float  # [K], 99 %
-    viscosity_ratio: float  # largest over smallest, 1 to 99 %
-    flow_ratio: float
-    rest_rows: int
-    condition: float  # of the scaled regressors of the running bins; above 30: nearly collinear
-    correlation: tuple[tuple[str, str, float], ...]  # posterior at the end, pairs beyond 0.8
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -96,6 +78,8 @@ class Inverse:
     rest_rows: int
     set_aside: SetAside
     excitation: Excitation
+    correlation: tuple[tuple[str, str, float], ...]  # of the draws at the end, pairs beyond 0.8
+    clean: CleanLine | None  # the line as described; part of what was believed before
     level_known: bool
     headspace_known: bool
     headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
@@ -138,10 +122,13 @@ def estimate_resistances(
     x = regressors(rows, flow, nu, rho)
     y = rows.pressure - rows.still
     knots = _knots(rows)
-    fit = fit_varying(rows.time, y, x, knots, tuple(PRIORS.values()))
+    excitation = _excitation(rows, x)
+    clean = clean_line(case, flow, temperature, excitation)
+    priors = priors_of(clean)
+    fit = fit_varying(rows.time, y, x, knots, priors)
     rng = np.random.default_rng(seed)
     first, last, contradicted = _ends(fit, rng)
-    tracks = _tracks(fit, rng)
+    tracks = _tracks(fit, priors, rng)
     aside = replace(rows.set_aside, outliers=int((~fit.kept).sum()))
     inverse = Inverse(
         knots_s=tuple(float(k) for k in knots),
@@ -161,7 +148,9 @@ def estimate_resistances(
         rows=int(rows.running.sum()),
         rest_rows=int((~rows.running).sum()),
         set_aside=aside,
-        excitation=_excitation(rows, x, last),
+        excitation=excitation,
+        correlation=_correlation(last),
+        clean=clean,
         level_known=rows.level_known,
         headspace_known=rows.headspace_known,
         headspace_drop=rows.headspace_drop,
@@ -210,7 +199,7 @@ def _ends(
     """
     p, last = len(NAMES), fit.knots.size - 1
     places = np.r_[0:p, last * p : (last + 1) * p] if last else np.arange(p)
-    draws, distance, active = _bounded_at(fit, places, rng)
+    draws, distance, active = _bounded_at(fit, places, DRAWS, rng)
     below = np.atleast_1d(active.reshape(-1, p).any(axis=0))
     named = tuple(n for n, bad in zip(NAMES, below, strict=True) if bad)
     contradicted = (named or ("the sum of the losses",)) if distance > CONTRADICTION else ()
@@ -218,7 +207,7 @@ def _ends(
 
 
 def _bounded_at(
-    fit: VaryingFit, places: npt.NDArray[np.int64], rng: np.random.Generator
+    fit: VaryingFit, places: npt.NDArray[np.int64], number: int, rng: np.random.Generator
 ) -> tuple[FloatArray, float, npt.NDArray[np.bool_]]:
     bounded = places % len(NAMES) != NAMES.index("offset")
     return bounded_mixture(
@@ -226,31 +215,36 @@ def _bounded_at(
         fit.means[:, places],
         fit.covariances[:, places[:, None], places],
         bounded,
-        DRAWS,
+        number,
         rng,
     )
 
 
-def _prior_draws(knots: int, rng: np.random.Generator) -> FloatArray:
-    """Draws of what was believed before, same shape and same signs as the posterior's."""
-    number = 4000
-    out = np.empty((number, knots, len(PRIORS)))
-    for j, prior in enumerate(PRIORS.values()):
-        walk = rng.choice(prior.walks, number)[:, None] / np.sqrt(max(knots - 1, 1))
-        first = rng.normal(prior.mean, prior.sd, (number, 1))
-        steps = walk * rng.standard_normal((number, knots - 1))
+def _prior_draws(priors: tuple[Prior, ...], knots: int, rng: np.random.Generator) -> FloatArray:
+    """Draws of what was believed before at the knots, (n, K, 4); no sign forced."""
+    out = np.empty((PRIOR_DRAWS, knots, len(priors)))
+    for j, courses in enumerate(priors):
+        pick = rng.choice(len(courses), PRIOR_DRAWS, p=[c.weight for c in courses])
+        mean, sd, walk = (
+            np.array([getattr(c, name) for c in courses])[pick, None]
+            for name in ("mean", "sd", "walk")
+        )
+        first = mean + sd * rng.standard_normal((PRIOR_DRAWS, 1))
+        steps = rng.standard_normal((PRIOR_DRAWS, knots - 1)) * walk / np.sqrt(max(knots - 1, 1))
         out[:, :, j] = np.cumsum(np.hstack([first, steps]), axis=1)
     return out
 
 
-def _tracks(fit: VaryingFit, rng: np.random.Generator) -> dict[str, Track]:
+def _tracks(
+    fit: VaryingFit, priors: tuple[Prior, ...], rng: np.random.Generator
+) -> dict[str, Track]:
     """Every unknown and their sum at every knot, bounds applied at that knot."""
     p, knots = len(NAMES), fit.knots.size
     sums = np.array([1.0, 1.0, 1.0, -1.0])
     rows: dict[str, list[tuple[float, ...]]] = {name: [] for name in (*NAMES, "total")}
-    prior = _prior_draws(knots, rng)
+    prior = _prior_draws(priors, knots, rng)
     for k in range(knots):
-        after, _, _ = _bounded_at(fit, np.arange(k * p, (k + 1) * p), rng)
+        after, _, _ = _bounded_at(fit, np.arange(k * p, (k + 1) * p), TRACK_DRAWS, rng)
         before = prior[:, k][(prior[:, k, :3] >= 0.0).all(axis=1)]
         for name, a, b in zip(
             (*NAMES, "total"),
@@ -279,7 +273,7 @@ def _track(name: str, values: list[tuple[float, ...]]) -> Track:
     )
 
 
-def _excitation(rows: Rows, x: FloatArray, last: FloatArray) -> Excitation:
+def _excitation(rows: Rows, x: FloatArray) -> Excitation:
     run = rows.running
     cold, hot = np.quantile(rows.temperature[run], [0.01, 0.99])
     nu = np.quantile(rows.nu[run], [0.01, 0.99])
@@ -287,23 +281,23 @@ def _excitation(rows: Rows, x: FloatArray, last: FloatArray) -> Excitation:
     columns = x[run][:, :3]
     scaled = columns / np.linalg.norm(columns, axis=0)
     singular = np.linalg.svd(scaled.T @ scaled, compute_uv=False)
-    with np.errstate(divide="ignore"):
-        condition = float(np.sqrt(singular[0] / max(singular[-1], 1e-30)))
-    between = np.atleast_2d(np.corrcoef(last.T))
-    pairs = [
-        (NAMES[i], NAMES[j], float(between[i, j]))
-        for i in range(len(NAMES))
-        for j in range(i + 1, len(NAMES))
-        if abs(between[i, j]) > 0.8
-    ]
     return Excitation(
         temperature_low=float(cold),
         temperature_high=float(hot),
         viscosity_ratio=float(nu[1] / nu[0]),
         flow_ratio=float(flow[1] / flow[0]),
         rest_rows=int((~run).sum()),
-        condition=min(condition, 1e9),
-        correlation=tuple(pairs),
+        condition=float(np.sqrt(singular[0] / max(singular[-1], 1e-18 * singular[0]))),
+    )
+
+
+def _correlation(last: FloatArray) -> tuple[tuple[str, str, float], ...]:
+    between = np.atleast_2d(np.corrcoef(last.T))
+    return tuple(
+        (NAMES[i], NAMES[j], float(between[i, j]))
+        for i in range(len(NAMES))
+        for j in range(i + 1, len(NAMES))
+        if abs(between[i, j]) > 0.8
     )
 
 

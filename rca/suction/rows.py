@@ -23,6 +23,7 @@ FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
 STARVED = 0.25e5  # [Pa]; below it the pump no longer draws its displacement, so the flow of such
 # a row is not known; common practice, no source
+COLD_SHARE = 0.001  # of the running bins
 COLDEST, HOTTEST = 203.0, 573.0  # [K], range of the viscosity relation
 
 
@@ -56,6 +57,7 @@ class Rows:
     set_aside: SetAside
     level_known: bool  # a level record moves ``still``
     headspace_known: bool
+    coldest: float = float("nan")  # [K], 0.1 % of the running bins, starved ones too
     headspace_drop: float | None = None  # [Pa], air minus head space, last twentieth, running
 
     def take(self, keep: Mask, set_aside: SetAside) -> "Rows":
@@ -113,6 +115,9 @@ def suction_rows(case: Case, aligned: AlignedRecord) -> Rows | str:
         set_aside=SetAside(),
         level_known=level_known,
         headspace_known=headspace_known,
+        coldest=float(np.quantile(t[turning & forward], COLD_SHARE))
+        if (turning & forward).any()
+        else float("nan"),
         headspace_drop=_headspace_drop(case, aligned, running),
     )
     return rows.take(

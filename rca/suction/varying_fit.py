@@ -1,9 +1,10 @@
 """Bayesian regression with coefficients that move in time along straight pieces between knots.
 
-Each coefficient is a first value and a random walk from knot to knot. How far it may walk is not
-known, so a grid of walk lengths is averaged with the weight the data give each (marginal
-likelihood). Given a walk length and the noise, everything is Gaussian and exact: A. Gelman et al.,
-Bayesian Data Analysis, 3rd ed., ch. 14 (conjugate linear model), from memory.
+Each coefficient is a first value and a random walk from knot to knot. Whether it starts where it
+should and how far it walks is not known, so a few courses of each are averaged with the weight
+the data give them (marginal likelihood). Given the courses and the noise, everything is Gaussian
+and exact: A. Gelman et al., Bayesian Data Analysis, 3rd ed., ch. 14 (conjugate linear model), from
+memory.
 """
 
 from dataclasses import dataclass
@@ -11,23 +12,27 @@ from itertools import product
 
 import numpy as np
 import numpy.typing as npt
-from scipy.linalg import cho_factor, cho_solve
+from scipy.linalg import cho_solve
+from scipy.linalg.lapack import dpotrf, dpotrs
 
 FloatArray = npt.NDArray[np.float64]
 CLIP = 5.0  # robust standard deviations beyond which a row is set aside
 ROUNDS = 3
+LEAST_WEIGHT = 0.004  # combinations below it are dropped
 LEAST_BLOCKS = 16  # fewer blocks do not give a variance worth having
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
-class Prior:
-    """What is believed of one coefficient before the data."""
+class Course:
+    """One way a coefficient may run before the data are seen: a first value and a random walk."""
 
-    mean: float
-    sd: float  # of its first value
-    walks: tuple[
-        float, ...
-    ]  # standard deviations of its walk over the whole record, equally likely
+    mean: float  # of the first value
+    sd: float
+    walk: float  # standard deviation of the walk over the whole record
+    weight: float  # how probable this course is beside the coefficient's others
+
+
+Prior = tuple[Course, ...]  # of one coefficient; weights add up to one
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -67,9 +72,8 @@ def fit_varying(
     kept = np.ones(time.size, dtype=bool)
     hats = _Hats(time, knots)
     noise, inflation = max(float(np.std(y)), 1.0), 1.0
-    freest = tuple(
-        Prior(mean=p.mean, sd=p.sd, walks=(max(p.walks),)) for p in priors
-    )  # the freest walk, only to find noise and outliers
+    # the freest course of each, only to find noise and outliers
+    freest = tuple((max(prior, key=lambda course: course.walk * course.sd),) for prior in priors)
     solution = _Solution(hats, y, x, kept, freest, noise, inflation)
     for _ in range(ROUNDS):
         residual = y - hats.predict(solution.mean, x)
@@ -129,7 +133,7 @@ class _Hats:
 
 
 class _Solution:
-    """Posterior for every combination of walk lengths, and their weights."""
+    """Posterior for every combination of courses, and their weights."""
 
     def __init__(
         self,
@@ -143,58 +147,68 @@ class _Solution:
     ) -> None:
         xx, xy = hats.moments(y, x, kept)
         scale = 1.0 / (noise**2 * inflation)
-        results = [
-            _posterior(xx * scale, xy * scale, priors, walks, hats.count)
-            for walks in product(*(prior.walks for prior in priors))
+        precisions = [
+            [course_precision(course, j, len(priors), hats.count) for course in prior]
+            for j, prior in enumerate(priors)
         ]
+        results = [_posterior(xx * scale, xy * scale, pieces) for pieces in product(*precisions)]
         evidence = np.array([r[2] for r in results])
         weights = np.exp(evidence - evidence.max())
         weights /= weights.sum()
-        use = weights > 1e-3
+        use = weights > LEAST_WEIGHT
         self.weights = weights[use] / weights[use].sum()
         self.means = np.array([r[0] for r, u in zip(results, use, strict=True) if u])
         unit = np.eye(xy.size)
         self.covariances = np.array(
-            [cho_solve(r[1], unit) for r, u in zip(results, use, strict=True) if u]
+            [cho_solve((r[1], True), unit) for r, u in zip(results, use, strict=True) if u]
         )
         self.mean = self.weights @ self.means
 
 
+Piece = tuple[FloatArray, FloatArray, float]  # precision, precision times mean, constant
+
+
 def _posterior(
-    xx: FloatArray, xy: FloatArray, priors: tuple[Prior, ...], walks: tuple[float, ...], knots: int
-) -> tuple[FloatArray, tuple[FloatArray, bool], float]:
+    xx: FloatArray, xy: FloatArray, pieces: tuple[Piece, ...]
+) -> tuple[FloatArray, FloatArray, float]:
     """Mean, Cholesky factor of the precision, and logarithm of the evidence but for a constant."""
-    precision, log_det = prior_precision(priors, walks, knots)
-    mean_0 = np.tile([prior.mean for prior in priors], knots)
-    factor = cho_factor(xx + precision, lower=True)
-    rhs = xy + precision @ mean_0
-    mean = cho_solve(factor, rhs)
-    log_post = 2.0 * float(np.sum(np.log(np.diag(factor[0]))))
-    evidence = 0.5 * (log_det - log_post + float(rhs @ mean - mean_0 @ precision @ mean_0))
-    return mean, factor, evidence
+    precision, rhs, constant = xx.copy(), xy.copy(), 0.0
+    for piece in pieces:
+        precision += piece[0]
+        rhs += piece[1]
+        constant += piece[2]
+    factor, failed = dpotrf(precision, lower=1, clean=1)
+    if failed:
+        raise ValueError("the precision of the coefficients is not positive definite")
+    mean, _ = dpotrs(factor, rhs, lower=1)
+    log_post = 2.0 * float(np.sum(np.log(np.diag(factor))))
+    return mean, factor, 0.5 * (constant - log_post + float(rhs @ mean))
 
 
-def prior_precision(
-    priors: tuple[Prior, ...], walks: tuple[float, ...], knots: int
-) -> tuple[FloatArray, float]:
-    """Precision matrix of first values and walks, and the logarithm of its determinant."""
-    p = len(priors)
-    out, log_det = np.zeros((p * knots, p * knots)), 0.0
-    for j, (prior, walk) in enumerate(zip(priors, walks, strict=True)):
-        first = prior.sd**-2
-        out[j, j] += first
-        log_det += np.log(first)
-        if knots == 1:
-            continue
-        step = (knots - 1) / walk**2
-        log_det += (knots - 1) * np.log(step)
-        for k in range(knots - 1):
-            a, b = k * p + j, (k + 1) * p + j
-            out[a, a] += step
-            out[b, b] += step
-            out[a, b] -= step
-            out[b, a] -= step
-    return out, float(log_det)
+def course_precision(course: Course, place: int, parameters: int, knots: int) -> Piece:
+    """Precision of one coefficient's first value and walk, among ``parameters`` at each knot.
+
+    With it, precision times mean, and log-determinant less the mean's own quadratic form plus
+    twice the logarithm of the weight, which is what the evidence needs of it.
+    """
+    own = np.zeros((knots, knots))
+    own[0, 0] = course.sd**-2
+    if knots > 1:
+        step = (knots - 1) / course.walk**2
+        edge = np.arange(knots - 1)
+        own[edge, edge] += step
+        own[edge + 1, edge + 1] += step
+        own[edge, edge + 1] -= step
+        own[edge + 1, edge] -= step
+    log_det = -2.0 * np.log(course.sd)
+    log_det += (knots - 1) * np.log((knots - 1) / course.walk**2) if knots > 1 else 0.0
+    size = parameters * knots
+    out, shifted = np.zeros((size, size)), np.zeros(size)
+    here = np.arange(knots) * parameters + place
+    out[np.ix_(here, here)] = own
+    shifted[here] = own @ np.full(knots, course.mean)
+    constant = log_det - course.mean**2 / course.sd**2 + 2.0 * np.log(course.weight)
+    return out, shifted, float(constant)
 
 
 def _robust_sd(values: FloatArray) -> float:
