@@ -14,6 +14,7 @@ MISREAD = 0.03  # share of records that are wrong in a way no check of ours sees
 STRAIN = (
     0.06e5  # [Pa], shortfall against the clean line at which a restriction is as likely as not
 )
+SEA_LEVEL = 101325.0  # [Pa], ISO 2533
 Items = list[EvidenceItem | NotAssessed]
 
 
@@ -24,6 +25,8 @@ def from_suction(
     items: Items = [*_measured(check, aligned), *_computed(case, check)]
     items.append(_released(check, aligned))
     items.append(_cold(check))
+    items.append(_too_small(case, check))
+    items.append(_thin_air(case, check, aligned))
     items += _restriction(check, aligned)
     return tuple(items)
 
@@ -216,6 +219,9 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
     # a clean line that holds at the cold start clears the cold oil of being the cause
     clean = cold.below_limit if cold is not None else 0.5
     yes = 0.15 + 0.7 * share * (0.6 + 0.4 * clean)
+    # an inlet that is low warm as well says nothing of the cold
+    warm = _low_when_warm(check)
+    yes = yes * (1.0 - warm) + 0.5 * warm
     return EvidenceItem(
         key="inlet.cold",
         node=Node.COLD_OIL,
@@ -226,6 +232,74 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
         common_cause="cold starts",
         basis=Basis.MEASURED if measured is not None else Basis.COMPUTED,
         absent=yes < 0.5,
+    )
+
+
+def _low_when_warm(check: SuctionCheck) -> float:
+    """Share of the warm running below the limit, measured where it was, else computed."""
+    measured = check.measured
+    regime = measured and (measured.last or measured.warm)
+    if regime:
+        return regime.below_limit
+    return check.normal.below_limit if check.normal is not None else 0.0
+
+
+def _too_small(case: Case, check: SuctionCheck) -> EvidenceItem | NotAssessed:
+    """A line that is too low clean and warm was too small from the day it was built."""
+    state = check.normal
+    if state is None or check.limit is None:
+        missing = ", ".join(check.missing) or "the inlet limit"
+        return NotAssessed(key="inlet.design", node=Node.LINE_TOO_SMALL, missing=missing)
+    below = state.below_limit
+    return EvidenceItem(
+        key="inlet.design",
+        node=Node.LINE_TOO_SMALL,
+        likelihood={"no": 0.95 - 0.9 * below, "yes": 0.1 + 0.85 * below},
+        statement=(
+            f"Clean and warm, the line as described is below the limit of "
+            f"{check.limit / 1e5:.2f} bar(a) with a computed probability of {below:.2g}."
+        ),
+        sources=_descriptor(case),
+        group=Group.INLET,
+        common_cause="pressure budget",
+        basis=Basis.COMPUTED,
+        absent=below < 0.5,
+    )
+
+
+def _thin_air(
+    case: Case, check: SuctionCheck, aligned: AlignedRecord | None
+) -> EvidenceItem | NotAssessed:
+    """Would the inlet hold at sea level, and not here?"""
+    regime = check.measured and (check.measured.last or check.measured.warm)
+    state = check.normal
+    if check.limit is None or (not regime and state is None):
+        missing = "the inlet pressure, measured or computed, and its limit"
+        return NotAssessed(key="inlet.air", node=Node.THIN_AIR, missing=missing)
+    if regime:
+        mean, sd, sources, basis = regime.median, 0.03e5, _source(aligned), Basis.MEASURED
+    else:
+        assert state is not None
+        mean, sd = state.pressure.mean, max(state.pressure.sd, 1e3)
+        sources, basis = _descriptor(case), Basis.COMPUTED
+    missing_air = SEA_LEVEL - check.atmosphere
+    here = float(norm.cdf(check.limit, mean, sd))
+    there = float(norm.cdf(check.limit, mean + missing_air, sd))
+    decides = max(here - there, 0.0)
+    return EvidenceItem(
+        key="inlet.air",
+        node=Node.THIN_AIR,
+        likelihood={"no": 0.97 - 0.9 * decides, "yes": 0.05 + 0.9 * decides},
+        statement=(
+            f"The air at the site is {check.atmosphere / 1e5:.2f} bar(a), "
+            f"{missing_air / 1e5:.2f} bar under sea level; warm inlet {mean / 1e5:.2f} bar(a), "
+            f"limit {check.limit / 1e5:.2f} bar(a)."
+        ),
+        sources=sources or _descriptor(case),
+        group=Group.INLET,
+        common_cause="sensor of the inlet pressure" if regime else "pressure budget",
+        basis=basis,
+        absent=decides < 0.5,
     )
 
 

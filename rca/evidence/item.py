@@ -53,6 +53,8 @@ class Node(StrEnum):
     STRAINER_RESISTANCE = "strainer resistance raised"  # no, yes
     TANK_DEPRESSION = "reservoir depression"  # no, yes
     LINE_RESISTANCE = "line resistance raised"  # no, yes
+    LINE_TOO_SMALL = "line too small as built"  # no, yes (clean, warm, at nominal flow)
+    THIN_AIR = "thin air decides"  # no, yes (holds at sea level, not at the site)
     LEVEL_LOW = "oil level low"  # no, yes
     OVERSPEED = "pump runs too fast"  # no, yes
     OVERPRESSURE = "pressure above rating"  # no, yes
