@@ -49,6 +49,7 @@ def command(
     incidents.duckdb and tables. Files that can't be used are named and left out.
     Exit status: 0 done, 2 could not be done, not one usable file among them.
     """
+    from rca.compare.counted import counted
     from rca.runner.compare import Asked, NothingUsableError, compare
 
     asked = Asked(
@@ -78,9 +79,12 @@ def command(
     if as_json:
         print(json.dumps(done.result, indent=2, ensure_ascii=False))
     else:
-        print(f"{len(done.gathered.incidents)} cases compared, observed until {asked.until}.")
         print(
-            f"{len(done.gathered.refused)} files left out, "
+            f"{counted(len(done.gathered.incidents), 'case')} compared, "
+            f"observed until {asked.until}."
+        )
+        print(
+            f"{counted(len(done.gathered.refused), 'file')} left out, "
             f"{len(done.gathered.replaced)} copies or older revisions not counted."
         )
         print(f"Read: {done.folder / 'compare.html'}   Filter: {done.folder / 'explore.html'}")

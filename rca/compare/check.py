@@ -43,8 +43,8 @@ class Comparison:
     invented: int
     watched: tuple[Watch, ...]
     exposure_given: int  # machines whose watch was given, not taken from their first incident
-    rankings: tuple[Ranking, ...]  # by asset, site
-    recurrences: tuple[Recurrence, ...]  # all, by asset
+    rankings: tuple[Ranking, ...]  # by machine, site
+    recurrences: tuple[Recurrence, ...]  # all, by machine
     came_back: tuple[CameBack, ...]
     groups: tuple[KnowledgeGroup, ...]
     asked: str  # the case the likeness is asked for
@@ -80,16 +80,16 @@ def compare_cases(
         undated=tuple(i for k, i in enumerate(table.ids) if table.day(k) is None),
         invented=int(table.invented.sum()),
         watched=watched,
-        exposure_given=len({w.asset for w in given} & set(table.assets)),
-        rankings=(rank(table, "asset"), rank(table, "site")),
-        recurrences=recurrences(table, watched, kinds=("all", "asset")),
+        exposure_given=len({w.machine for w in given} & set(table.machines)),
+        rankings=(rank(table, "machine"), rank(table, "site")),
+        recurrences=recurrences(table, watched, kinds=("all", "machine")),
         came_back=came_back(table, until=until),
         groups=tuple(_group(table, watched, name) for name in knowledge),
         asked=table.ids[row] if row is not None else "",
         alike=alike,
         not_comparable=len(apart),
         same_finding=_same_finding(table, row, apart),
-        outcomes=outcomes(table, until=until),
+        outcomes=outcomes(table, watched, until=until),
         register=register(case_actions(table), today=until),
     )
 

@@ -16,7 +16,7 @@ MOST_FOR_NEIGHBOURS = 20_000  # n squared; beyond it the page says that it has n
 def explorer_data(table: IncidentTable, check: Comparison) -> dict[str, Any]:
     """Plain data of the page; numbers index the lists ``sites``, ``machines``, ``signs`` ..."""
     n = len(table)
-    sites, machines = _codes(table.sites), _codes(table.assets)
+    sites, machines = _codes(table.sites), _codes(table.machines)
     versions, causes = _codes(table.knowledge), _codes(table.main_causes)
     near = n <= MOST_FOR_NEIGHBOURS
     nearest, scores = neighbours(table, count=NEAREST) if near else (np.zeros((n, 0)),) * 2

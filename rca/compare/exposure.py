@@ -18,14 +18,14 @@ from rca.base.errors import ArchiveError
 from rca.compare.table import EPOCH, IncidentTable
 
 FloatArray = npt.NDArray[np.float64]
-COLUMNS = ("asset", "from", "to", "running_hours")
+COLUMNS = ("asset", "from", "to", "running_hours")  # and "site" where two share a name
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Watch:
     """One machine watched from one day to another; days since 1970-01-01."""
 
-    asset: str
+    machine: str  # as in ``IncidentTable.machines``
     start: float
     end: float
     hours: float | None = None  # running hours in that time
@@ -68,8 +68,9 @@ def _watch(row: dict[str, str], place: str) -> Watch:
             ) from error
     if days[1] <= days[0]:
         raise ArchiveError(f"{place}: the last day does not come after the first")
+    asset, site = ((row.get(name) or "").strip() for name in ("asset", "site"))
     return Watch(
-        asset=(row.get("asset") or "").strip(),
+        machine=f"{asset}, {site}" if site else asset,
         start=days[0],
         end=days[1],
         hours=_hours((row.get("running_hours") or "").strip(), days[1] - days[0], place),
@@ -95,15 +96,17 @@ def watches(
 ) -> tuple[Watch, ...]:
     """One or more watches for every machine of the table."""
     end = float((until - EPOCH).days)
-    found = [w for w in given if w.asset in set(table.assets)]
-    known = {w.asset for w in found}
+    machines = table.machines
+    found = [w for w in given if w.machine in set(machines)]
+    known = {w.machine for w in found}
     days = np.where(np.isfinite(table.days), table.days, np.inf)
-    for asset in sorted(set(table.assets) - known):
-        first = float(days[np.array([a == asset for a in table.assets])].min())
+    column = np.array(machines, dtype=object)
+    for machine in sorted(set(machines) - known):
+        first = float(days[column == machine].min())
         start = first if since is None else float((since - EPOCH).days)
         if start < end:
             found.append(
-                Watch(asset=asset, start=start, end=end, starts_with_incident=since is None)
+                Watch(machine=machine, start=start, end=end, starts_with_incident=since is None)
             )
     return tuple(found)
 
@@ -120,30 +123,32 @@ def length(watched: Sequence[Watch]) -> float:
     return float(sum(w.days for w in watched))
 
 
-def ages(watched: Sequence[Watch], asset_days: Sequence[tuple[str, float]]) -> list[float]:
+def ages(watched: Sequence[Watch], machine_days: Sequence[tuple[str, float]]) -> list[float]:
     """The exposure gathered by all watched machines together up to each event, sorted.
 
     Events outside every watch of their machine are left out, and so is the first incident where
     it starts the watch. Machines that join or leave are allowed for: the clock of the trend is
     exposure, not the calendar. Running hours count as spread evenly over their watch.
     """
+    by_machine: dict[str, list[Watch]] = {}
+    for w in watched:
+        by_machine.setdefault(w.machine, []).append(w)
     kept = sorted(
         day
-        for asset, day in asset_days
+        for machine, day in machine_days
         if any(
-            w.asset == asset
-            and (w.start < day if w.starts_with_incident else w.start <= day)
-            and day <= w.end
-            for w in watched
+            (w.start < day if w.starts_with_incident else w.start <= day) and day <= w.end
+            for w in by_machine.get(machine, ())
         )
     )
-    return [_gathered(watched, day) for day in kept]
+    return _gathered(watched, np.array(kept)).tolist() if kept else []
 
 
-def _gathered(watched: Sequence[Watch], day: float) -> float:
+def _gathered(watched: Sequence[Watch], days: FloatArray) -> FloatArray:
+    """Exposure of all machines up to each day, [days]."""
     hours = in_hours(watched)
-    total = 0.0
+    total = np.zeros(days.size)
     for w in watched:
-        part = min(max((day - w.start) / w.days, 0.0), 1.0)
+        part = np.clip((days - w.start) / w.days, 0.0, 1.0)
         total += part * ((w.hours or 0.0) if hours else w.days)
     return total

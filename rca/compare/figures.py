@@ -39,26 +39,26 @@ def figures_comparison(table: IncidentTable, check: Comparison) -> dict[str, Fig
 
 def in_time(table: IncidentTable, check: Comparison) -> Figure:
     """Each incident a mark: when, on which machine, which side; the machines with most on top."""
-    shown = _machines(table)
+    shown, machines = _machines(table), table.machines
     figure, axes = new_figure(height_in=0.9 + 0.2 * len(shown))
     ax = axes[0]
-    place = {asset: -k for k, asset in enumerate(shown)}
+    place = {machine: -k for k, machine in enumerate(shown)}
     for watch in check.watched:
-        if watch.asset in place:
-            y = place[watch.asset]
+        if watch.machine in place:
+            y = place[watch.machine]
             ax.plot([watch.start, watch.end], [y, y], color=PALE, linewidth=4, zorder=0)
     few = len(table) <= 400
     for side, (colour, marker) in LOOKS.items():
         rows = [
             k
             for k in range(len(table))
-            if table.sides[k] == side and np.isfinite(table.days[k]) and table.assets[k] in place
+            if table.sides[k] == side and np.isfinite(table.days[k]) and machines[k] in place
         ]
         if not rows:
             continue
         ax.plot(
             table.days[rows],
-            [place[table.assets[k]] for k in rows],
+            [place[machines[k]] for k in rows],
             linestyle="none",
             marker=marker,
             color=colour,
@@ -80,7 +80,7 @@ def in_time(table: IncidentTable, check: Comparison) -> Figure:
 
 
 def _machines(table: IncidentTable) -> list[str]:
-    names, counts = np.unique(np.array(table.assets), return_counts=True)
+    names, counts = np.unique(np.array(table.machines), return_counts=True)
     order = sorted(range(names.size), key=lambda k: (-counts[k], names[k]))
     return [str(names[k]) for k in order[:MACHINES_SHOWN]]
 

@@ -23,7 +23,7 @@ import pandas as pd
 from rca.base.errors import ArchiveError
 from rca.compare.gather import Gathered, Refused
 from rca.compare.incident import Incident, PastAction
-from rca.compare.table import IncidentTable
+from rca.compare.table import IncidentTable, machine_names
 
 _CONFIG: dict[str, str | bool | int | float | list[str]] = {
     "enable_external_access": False,
@@ -168,6 +168,7 @@ def _table(store: duckdb.DuckDBPyConnection) -> IncidentTable:
         titles=texts["title"],
         sites=texts["site"],
         assets=texts["asset"],
+        machines=machine_names(texts["asset"], texts["site"]),
         sides=texts["side"],
         knowledge=texts["knowledge"],
         main_causes=texts["main_cause"],

@@ -41,7 +41,7 @@ def panels_comparison(
 def _time(table: IncidentTable, check: Comparison, figures: frozenset[str]) -> Panel:
     days = [d for k in range(len(table)) if (d := table.day(k)) is not None]
     span = f", {min(days)} to {max(days)}" if days else ""
-    machines = len({(s, a) for s, a in zip(table.sites, table.assets, strict=True)})
+    machines = len(set(table.machines))
     limits = [f"Observed until {check.until}."]
     if check.undated:
         limits.append(f"{len(check.undated)} cases without a date stand in no figure over time.")
@@ -167,7 +167,7 @@ def _alike_tables(table: IncidentTable, check: Comparison) -> tuple[Table, ...]:
                 rows=tuple(
                     (
                         table.ids[k],
-                        table.assets[k],
+                        table.machines[k],
                         f"{overlap:.2f}",
                         table.sides[k],
                         table.main_causes[k],
@@ -187,7 +187,7 @@ def _alike_row(table: IncidentTable, one: Likeness) -> tuple[str, ...]:
     return (
         table.ids[one.other],
         day.isoformat() if day else "not recorded",
-        table.assets[one.other],
+        table.machines[one.other],
         f"{one.score:.2f}",
         "; ".join(shared) or "nothing",
         "; ".join(different) or "nothing",
@@ -217,7 +217,7 @@ def _read(
                 (
                     table.ids[k],
                     d.isoformat() if (d := table.day(k)) else "not recorded",
-                    table.assets[k],
+                    table.machines[k],
                     table.sides[k],
                     table.main_causes[k],
                     table.titles[k],

@@ -84,7 +84,9 @@ def _one_by_one(table: IncidentTable, groups: tuple[KindOutcome, ...]) -> Table:
             a.action.done.isoformat() if a.action.done else "",
             a.result.value + (f" after {a.after_days:.0f} d" if a.after_days is not None else ""),
             f"{a.watched_days:.0f}",
-            f"{a.old_interval_days:.0f}" if a.old_interval_days is not None else "not known",
+            f"{a.old_interval_days:.0f}, {a.interval_of}"
+            if a.old_interval_days is not None
+            else "not known",
             f"{a.silence_p:.2f}" if a.silence_p is not None else "",
             a.proof or "not stored",
         )

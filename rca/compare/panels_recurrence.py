@@ -16,7 +16,7 @@ def came_back_panel(check: Comparison) -> Panel:
     if found:
         first = found[0]
         answer = (
-            f"{first.cause} came back on {first.asset}: {len(first.cases)} incidents. "
+            f"{first.cause} came back on {first.machine}: {len(first.cases)} incidents. "
             f"{len(found)} pairs of machine and cause came back in all."
         )
     else:
@@ -40,7 +40,7 @@ def came_back_panel(check: Comparison) -> Panel:
                 ),
                 rows=tuple(
                     (
-                        c.asset,
+                        c.machine,
                         c.cause,
                         str(len(c.cases)),
                         ", ".join(c.cases),

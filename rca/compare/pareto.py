@@ -39,14 +39,14 @@ class Bar:
 class Ranking:
     """A ranking of n incidents by one property."""
 
-    by: str  # "mechanism", "cause", "asset", "site" or "side"
+    by: str  # "mechanism", "cause", "machine", "site" or "side"
     n: int
     bars: tuple[Bar, ...]  # by count, then by name
     overlap: bool  # an incident may stand in several bars
 
 
 def rank(table: IncidentTable, by: str) -> Ranking:
-    """Rank the incidents by "mechanism", "cause", "asset", "site" or "side"."""
+    """Rank the incidents by "mechanism", "cause", "machine", "site" or "side"."""
     if by == "mechanism":
         names: Sequence[str] = table.mechanism_names
         masks = [column >= TOOK_PART for column in table.mechanisms.T]
@@ -54,7 +54,7 @@ def rank(table: IncidentTable, by: str) -> Ranking:
     else:
         words = {
             "cause": table.main_causes,
-            "asset": table.assets,
+            "machine": table.machines,
             "site": table.sites,
             "side": table.sides,
         }[by]

@@ -29,7 +29,7 @@ SIGNIFICANT = 0.05
 class Recurrence:
     """One machine, mechanism or cause over its exposure."""
 
-    kind: str  # "all", "asset", "mechanism" or "cause"
+    kind: str  # "all", "machine", "mechanism" or "cause"
     name: str
     events: int  # counted: inside the watch, the incident that starts it not
     seen: int  # all incidents of the kind
@@ -50,7 +50,7 @@ class Recurrence:
 class CameBack:
     """A cause that came back on the same machine."""
 
-    asset: str
+    machine: str
     cause: str
     cases: tuple[str, ...]
     gaps_days: tuple[float, ...]
@@ -80,7 +80,7 @@ def _groups(table: IncidentTable, kind: str) -> list[tuple[str, np.ndarray]]:
     if kind == "mechanism":
         pairs = zip(table.mechanism_names, table.mechanisms.T >= TOOK_PART, strict=True)
         return [(name, mask) for name, mask in pairs if mask.any()]
-    words = table.assets if kind == "asset" else table.main_causes
+    words = table.machines if kind == "machine" else table.main_causes
     column = np.array(words, dtype=object)
     return [(n, column == n) for n in sorted(set(words)) if n != UNDETERMINED]
 
@@ -88,10 +88,10 @@ def _groups(table: IncidentTable, kind: str) -> list[tuple[str, np.ndarray]]:
 def _one(
     table: IncidentTable, watched: Sequence[Watch], kind: str, name: str, mask: np.ndarray
 ) -> Recurrence:
-    watch = [w for w in watched if kind != "asset" or w.asset == name]
+    watch = [w for w in watched if kind != "machine" or w.machine == name]
+    machines = table.machines
     events = [
-        (table.assets[i], float(table.days[i]))
-        for i in np.flatnonzero(mask & np.isfinite(table.days))
+        (machines[i], float(table.days[i])) for i in np.flatnonzero(mask & np.isfinite(table.days))
     ]
     found = ages(watch, events)
     total = length(watch)
@@ -101,7 +101,7 @@ def _one(
         name=name,
         events=len(found),
         seen=int(mask.sum()),
-        machines=len({w.asset for w in watch}),
+        machines=len({w.machine for w in watch}),
         exposure=total,
         unit="running hours" if in_hours(watch) else "machine-days",
         rate=rate(len(found), total) if total > 0 else None,
@@ -135,20 +135,21 @@ def _trend(
 
 def came_back(table: IncidentTable, *, until: date) -> tuple[CameBack, ...]:
     """Every cause that was found twice or more on one machine, the most often first."""
+    machines = table.machines
     groups: dict[tuple[str, str], list[int]] = {}
     for i in np.argsort(table.days, kind="stable"):
         if np.isfinite(table.days[i]) and table.main_causes[i] != UNDETERMINED:
-            groups.setdefault((table.assets[i], table.main_causes[i]), []).append(int(i))
+            groups.setdefault((machines[i], table.main_causes[i]), []).append(int(i))
     end = float((until - date(1970, 1, 1)).days)
     found = [
         CameBack(
-            asset=asset,
+            machine=machine,
             cause=cause,
             cases=tuple(table.ids[i] for i in rows),
             gaps_days=tuple(float(g) for g in np.diff(table.days[rows])),
             open_days=end - float(table.days[rows[-1]]),
         )
-        for (asset, cause), rows in groups.items()
+        for (machine, cause), rows in groups.items()
         if len(rows) > 1
     ]
-    return tuple(sorted(found, key=lambda c: (-len(c.cases), c.asset, c.cause)))
+    return tuple(sorted(found, key=lambda c: (-len(c.cases), c.machine, c.cause)))

@@ -151,15 +151,16 @@ def _block(
     agreed = (both_seen + both_absent).astype(float)
     compared = agreed + apart
     for k in range(len(table.word_names)):
-        words = table.words[:, k]
-        known = (words[rows] != "")[:, None] & (words != "")[None, :]
-        compared += known
-        agreed += known & (words[rows][:, None] == words[None, :])
+        names, codes = np.unique(table.words[:, k], return_inverse=True)
+        known = (names != "")[codes]
+        both = known[rows][:, None] & known[None, :]
+        compared += both
+        agreed += both & (codes[rows][:, None] == codes[None, :])
     for k, name in enumerate(table.number_names):
         near = _near(name, table.numbers[rows, k][:, None], table.numbers[:, k][None, :])
         known = np.isfinite(near)
         compared += known
-        agreed += np.where(known, near, 0.0)
+        agreed += np.nan_to_num(near)
     return agreed, compared
 
 
@@ -169,7 +170,7 @@ def _near(name: str, one: FloatArray, other: FloatArray) -> FloatArray:
         apart = np.abs(one - other) / _DIFFERENCE[name]
     else:
         with np.errstate(divide="ignore", invalid="ignore"):
-            apart = np.abs(np.log(one / other)) / _RATIO.get(name, np.log(2.0))
+            apart = np.abs(np.log(one) - np.log(other)) / _RATIO.get(name, np.log(2.0))
     return np.asarray(np.maximum(1.0 - apart, 0.0))
 
 

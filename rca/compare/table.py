@@ -1,5 +1,6 @@
 """All incidents as arrays, one row an incident: what the calculations read."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from datetime import date
 from typing import Any
@@ -18,7 +19,7 @@ _ARRAYS = (
     *("signs", "numbers", "words"),
 )
 _TEXTS = (
-    *("ids", "titles", "sites", "assets", "sides", "knowledge", "main_causes"),
+    *("ids", "titles", "sites", "assets", "machines", "sides", "knowledge", "main_causes"),
     *("currencies", "sources"),
 )
 
@@ -31,6 +32,7 @@ class IncidentTable:
     titles: tuple[str, ...]
     sites: tuple[str, ...]
     assets: tuple[str, ...]
+    machines: tuple[str, ...]  # see ``machine_names``
     sides: tuple[str, ...]
     knowledge: tuple[str, ...]
     main_causes: tuple[str, ...]
@@ -83,6 +85,7 @@ def table_of(incidents: tuple[Incident, ...]) -> IncidentTable:
         titles=tuple(i.title for i in incidents),
         sites=tuple(i.site for i in incidents),
         assets=tuple(i.asset for i in incidents),
+        machines=machine_names([i.asset for i in incidents], [i.site for i in incidents]),
         sides=tuple(i.side for i in incidents),
         knowledge=tuple(i.knowledge for i in incidents),
         main_causes=tuple(i.main_cause for i in incidents),
@@ -112,6 +115,17 @@ def table_of(incidents: tuple[Incident, ...]) -> IncidentTable:
             [[i.words.get(w, "") for w in words] for i in incidents], dtype=np.str_
         ).reshape(len(incidents), len(words)),
         actions=tuple((row, a) for row, i in enumerate(incidents) for a in i.actions),
+    )
+
+
+def machine_names(assets: Sequence[str], sites: Sequence[str]) -> tuple[str, ...]:
+    """A name for each incident's machine; the site is added where two sites use one name."""
+    places: dict[str, set[str]] = {}
+    for asset, site in zip(assets, sites, strict=True):
+        places.setdefault(asset, set()).add(site)
+    return tuple(
+        asset if len(places[asset]) == 1 else f"{asset}, {site}"
+        for asset, site in zip(assets, sites, strict=True)
     )
 
 

@@ -106,8 +106,8 @@ def base_rate(
     grid = (edges[1:] + edges[:-1]) / 2
     density = np.diff(beta(0.5, 0.5).cdf(edges))  # the prior's own mass in each cell
     logs = np.log(np.maximum(density, 1e-300))
-    for one in ratio:
-        logs += np.log(grid * one + (1 - grid))
+    for part in np.array_split(ratio, ratio.size // 256 + 1):
+        logs += np.log(np.outer(part, grid) + (1 - grid)).sum(axis=0)
     mass = np.exp(logs - logs.max())
     mass /= mass.sum()
     cumulative = np.cumsum(mass)

@@ -10,6 +10,7 @@ Cramér-von Mises test; NIST/SEMATECH e-Handbook of Statistical Methods 8.2.3 fo
 military handbook's tests and for reverse arrangements.
 """
 
+from bisect import bisect_left, insort
 from collections.abc import Sequence
 from dataclasses import dataclass
 from math import exp, log, sqrt
@@ -99,8 +100,11 @@ def reverse_arrangements(ages: Sequence[float]) -> TrendTest:
     if t.size < 4:
         raise OutOfRangeError("reverse arrangements need at least four events")
     gaps = np.diff(t, prepend=0.0)
-    i, j = np.triu_indices(gaps.size, k=1)
-    found = float((gaps[i] < gaps[j]).sum())
+    earlier: list[float] = []
+    found = 0.0
+    for gap in gaps.tolist():
+        found += bisect_left(earlier, gap)
+        insort(earlier, gap)
     n = gaps.size
     mean, sd = n * (n - 1) / 4, sqrt((2 * n + 5) * (n - 1) * n / 72)
     shift = 0.5 if found < mean else -0.5
