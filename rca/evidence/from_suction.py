@@ -6,8 +6,9 @@ from scipy.stats import norm
 from rca.base.source import Origin, Reading, Source
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
+from rca.evidence.from_suction_inverse import from_inverse
 from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
-from rca.suction.check import RELEASED_MATTERS, SuctionCheck
+from rca.suction.check import RELEASED_MATTERS, SuctionCheck, transducer_error
 from rca.suction.measured import NEAR_VAPOUR, Regime
 
 MISREAD = 0.03  # share of records that are wrong in a way no check of ours sees; judgement
@@ -27,7 +28,9 @@ def from_suction(
     items.append(_cold(check))
     items.append(_too_small(case, check))
     items.append(_thin_air(case, check, aligned))
-    items += _restriction(check, aligned)
+    items += from_inverse(check, aligned)
+    if check.inverse is None:
+        items += _restriction(check, aligned)
     return tuple(items)
 
 
@@ -64,6 +67,14 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     if regime is None:
         return []
     u = float(np.hypot(measured.sensor_u, 0.02e5))
+    median, words = regime.median, _regime_words(regime, check.limit, measured.cold)
+    error = transducer_error(check)
+    if error is not None:
+        median, u = median + error.p50, max(error.sd, 0.01e5)
+        words += (
+            f" At rest the transducer reads {abs(error.p50) / 1e5:.2f} bar too "
+            f"{'low' if error.p50 > 0 else 'high'}; corrected {median / 1e5:.2f} bar(a)."
+        )
     return [
         EvidenceItem(
             key="inlet.measured",
@@ -76,9 +87,9 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
             group=Group.INLET,
             common_cause="sensor of the inlet pressure",
             basis=Basis.MEASURED,
-            reading=Reading(value=regime.median, unit="Pa", u=u, origin=Origin.MEASURED),
+            reading=Reading(value=median, unit="Pa", u=u, origin=Origin.MEASURED),
             limit=Reading(value=check.limit, unit="Pa"),
-            absent=regime.median >= check.limit,
+            absent=median >= check.limit,
         )
     ]
 
@@ -245,19 +256,21 @@ def _low_when_warm(check: SuctionCheck) -> float:
 
 
 def _too_small(case: Case, check: SuctionCheck) -> EvidenceItem | NotAssessed:
-    """A line that is too low clean and warm was too small from the day it was built."""
+    """A line too low clean, warm and at sea level was too small from the day it was built."""
     state = check.normal
     if state is None or check.limit is None:
         missing = ", ".join(check.missing) or "the inlet limit"
         return NotAssessed(key="inlet.design", node=Node.LINE_TOO_SMALL, missing=missing)
-    below = state.below_limit
+    sea = state.pressure.mean + SEA_LEVEL - check.atmosphere
+    below = float(norm.cdf(check.limit, sea, max(state.pressure.sd, 1e3)))
     return EvidenceItem(
         key="inlet.design",
         node=Node.LINE_TOO_SMALL,
         likelihood={"no": 0.95 - 0.9 * below, "yes": 0.1 + 0.85 * below},
         statement=(
-            f"Clean and warm, the line as described is below the limit of "
-            f"{check.limit / 1e5:.2f} bar(a) with a computed probability of {below:.2g}."
+            f"Clean and warm, with the air of sea level, the line as described is computed at "
+            f"{sea / 1e5:.2f} +/- {state.pressure.sd / 1e5:.2f} bar(a); limit "
+            f"{check.limit / 1e5:.2f} bar(a)."
         ),
         sources=_descriptor(case),
         group=Group.INLET,
