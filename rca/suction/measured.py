@@ -63,7 +63,6 @@ class MeasuredInlet:
     standstill: float | None  # [Pa], median where the shaft stands; None where never seen
     standstill_expected: float | None  # [Pa], atmosphere and head
     offset: float | None  # [Pa], measured minus expected at standstill
-    offset_late: float | None  # [Pa], the same in the time of ``last``: a drift shows here first
     warm: Regime | None
     cold: Regime | None
     last: Regime | None  # the last tenth of the warm running time: the state nearest the failure
@@ -95,13 +94,6 @@ def measure_inlet(
     last_mask = _last_tenth(warm)
     sensor_u = SENSOR_U if offset is None else float(np.hypot(SENSOR_U / 2, abs(offset) / 2))
 
-    late = rest & (aligned.time_s >= _start_of(aligned, last_mask))
-    offset_late = (
-        float(np.median(inlet.mean[late])) - expected
-        if expected is not None and late.sum() >= LEAST_BINS
-        else offset
-    )
-
     def regime(mask: Mask) -> Regime | None:
         return _regime(case, aligned, mask, limit)
 
@@ -110,7 +102,6 @@ def measure_inlet(
         standstill=standstill,
         standstill_expected=expected,
         offset=offset,
-        offset_late=offset_late,
         warm=regime(warm),
         cold=regime(cold),
         last=regime(last_mask),
@@ -120,11 +111,6 @@ def measure_inlet(
         drift_per_week=_drift(pieces),
         remark=inlet.remark,
     )
-
-
-def _start_of(aligned: AlignedRecord, mask: Mask) -> float:
-    times = aligned.time_s[mask]
-    return float(times[0]) if times.size else float("-inf")
 
 
 def _expected_at_rest(case: Case) -> float | None:
