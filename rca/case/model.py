@@ -9,6 +9,7 @@ from dataclasses import dataclass, field
 from datetime import date, datetime
 
 from rca.base.source import Reading, Source
+from rca.case.commission import Commission
 from rca.case.vocabulary import (
     ActionKind,
     Extent,
@@ -140,6 +141,8 @@ class TimeAxis:
     column: str = ""
     zone: str = ""  # an IANA name, or "UTC"
     offset_s: float = 0.0
+    offset_u_s: float | None = None  # standard uncertainty of the offset
+    offset_method: str = ""  # how the offset was found
     drift_ppm: float = 0.0  # seconds of error per million seconds since the first sample
     start: datetime | None = None  # for a record without a time column
     rate_hz: float | None = None  # for a record without a time column
@@ -298,3 +301,4 @@ class Case:
     actions: tuple[Action, ...] = ()
     files: tuple[EvidenceFile, ...] = ()
     gaps: tuple[Gap, ...] = ()
+    commission: Commission = field(default_factory=Commission)

@@ -6,6 +6,7 @@ from zoneinfo import ZoneInfo, available_timezones
 
 from rca.base.errors import Problem, Severity
 from rca.base.units import UnitError, channel_scale
+from rca.case.commission import Commission
 from rca.case.model import (
     Breather,
     Channel,
@@ -20,6 +21,7 @@ from rca.case.model import (
     TimeAxis,
 )
 from rca.case.vocabulary import FITTING_FORMS, QUANTITIES, FluidClass, PartKind, PumpKind
+from rca.intake.commission import read_commission
 from rca.intake.getters import Findings, Table
 from rca.intake.toml_lines import key_lines
 from rca.intake.words import mend_word
@@ -38,6 +40,7 @@ class Descriptor:
     oil_reports: tuple[OilReportFile, ...]
     records: tuple[RecordFile, ...]
     excluded: tuple[Excluded, ...]
+    commission: Commission
 
 
 def read_descriptor(content: bytes, sha256: str) -> tuple[Descriptor | None, list[Problem]]:
@@ -79,6 +82,7 @@ def read_descriptor(content: bytes, sha256: str) -> tuple[Descriptor | None, lis
         oil_reports=tuple(_oil_report(table) for table in top.tables("oil_reports")),
         records=tuple(_record(table) for table in top.tables("records")),
         excluded=tuple(_excluded(table) for table in top.tables("excluded")),
+        commission=read_commission(top),
     )
     top.done()
     return descriptor, findings.problems
@@ -300,6 +304,8 @@ def _record(table: Table) -> RecordFile:
         column=inner.text("column"),
         zone=_zone(inner, "zone"),
         offset_s=offset.value if offset else 0.0,
+        offset_u_s=offset.u if offset else None,
+        offset_method=inner.text("offset_method"),
         drift_ppm=inner.number("drift_ppm", low=-1e5, high=1e5) or 0.0,
         start=start,
         rate_hz=rate_hz,

@@ -81,6 +81,7 @@ def _case(
         oil_reports=descriptor.oil_reports,
         records=descriptor.records,
         excluded=descriptor.excluded,
+        commission=descriptor.commission,
         photos=read_photos(folder, by_name, problems),
         findings=read_findings(folder, sha256("teardown/findings.csv"), problems),
         notes=_notes(folder, problems),
