@@ -29,8 +29,7 @@ def from_suction(
     items.append(_too_small(case, check))
     items.append(_thin_air(case, check, aligned))
     items += from_inverse(check, aligned)
-    if check.inverse is None:
-        items += _restriction(check, aligned)
+    items += _restriction(check, aligned)
     return tuple(items)
 
 
@@ -80,9 +79,9 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
             key="inlet.measured",
             node=Node.INLET_PRESSURE,
             likelihood=_with_starts(
-                _states(regime.median, u, check.limit, trust=1 - MISREAD), regime, measured.cold
+                _states(median, u, check.limit, trust=1 - MISREAD), regime, measured.cold
             ),
-            statement=_regime_words(regime, check.limit, measured.cold),
+            statement=words,
             sources=_source(aligned),
             group=Group.INLET,
             common_cause="sensor of the inlet pressure",
@@ -321,7 +320,9 @@ def _restriction(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     measured = check.measured
     if measured is None or measured.shortfall is None:
         return []
-    z = (measured.shortfall - STRAIN) / max(measured.sensor_u, 0.02e5)
+    error = transducer_error(check)
+    shortfall = measured.shortfall - (error.p50 if error is not None else 0.0)
+    z = (shortfall - STRAIN) / max(measured.sensor_u if error is None else error.sd, 0.02e5)
     share = float(norm.cdf(z))
     drift = measured.drift_per_week
     growing = (
@@ -331,17 +332,17 @@ def _restriction(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     return [
         EvidenceItem(
             key="inlet.shortfall",
-            node=Node.STRAINER_RESISTANCE,
+            node=Node.INLET_SHORTFALL,
             likelihood={"no": 0.95 - 0.75 * share, "yes": yes},
             statement=(
                 f"At the end of the record the warm inlet pressure is "
-                f"{measured.shortfall / 1e5:.2f} bar below that of the clean line{growing}."
+                f"{shortfall / 1e5:.2f} bar below that of the clean line{growing}."
             ),
             sources=_source(aligned),
             group=Group.INLET,
             common_cause="sensor of the inlet pressure",
             basis=Basis.MEASURED,
-            reading=Reading(value=measured.shortfall, unit="Pa", u=measured.sensor_u),
+            reading=Reading(value=shortfall, unit="Pa", u=measured.sensor_u),
             absent=share < 0.5,
         )
     ]

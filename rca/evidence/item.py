@@ -50,6 +50,7 @@ class Node(StrEnum):
     HOT_BUBBLES = "bubbles stay hot"  # no, yes (fast compression of coarse enough bubbles)
     FUEL_PATH = "fuel reaches the hot gas"  # no, yes
     COLD_OIL = "oil too viscous at start"  # no, yes
+    INLET_SHORTFALL = "inlet below the clean line"  # no, yes (whatever lowers it)
     STRAINER_RESISTANCE = "strainer resistance raised"  # no, yes
     TANK_DEPRESSION = "reservoir depression"  # no, yes
     LINE_RESISTANCE = "line resistance raised"  # no, yes

@@ -7,9 +7,11 @@ from rca.case.series import AlignedRecord
 from rca.case.site import local_atmosphere
 from rca.suction.budget import line_residence, pump_flow
 from rca.suction.counterfactual import Change, Counterfactual, NotComputed, counterfactuals
-from rca.suction.explanations import Explanations, explain
+from rca.suction.explanations import WEATHER, Explanation, Explanations, explain
 from rca.suction.inverse import Inverse, estimate_resistances
 from rca.suction.measured import MeasuredInlet, measure_inlet
+from rca.suction.priors import NOTICED
+from rca.suction.spread import Spread
 from rca.suction.state import (
     RELEASED_MATTERS,
     InletState,
@@ -30,6 +32,7 @@ __all__ = [
     "check_suction",
     "inlet_limit",
     "inlet_state",
+    "transducer_error",
 ]
 COLD_BELOW_NORMAL = 30.0  # [K], a start is taken this much colder where none is stated
 
@@ -93,4 +96,24 @@ def check_suction(
         missing=missing,
         seed=seed,
         samples=samples,
+    )
+
+
+def transducer_error(check: SuctionCheck) -> Spread | None:
+    """How much too low the transducer reads at the end of the record [Pa]; negative: too high.
+
+    From the resistances where the record gives them, else from its reading at standstill. None
+    where neither tells it, or it is too small to matter.
+    """
+    if check.explanations is not None:
+        share = next(
+            s for s in check.explanations.shares if s.explanation is Explanation.DRIFTED_TRANSDUCER
+        )
+        known = share.identified and max(share.amount.p05, -share.amount.p95) > NOTICED
+        return share.amount if known else None
+    late = check.measured.offset if check.measured is not None else None
+    if late is None or abs(late) < NOTICED + 1.645 * WEATHER:
+        return None
+    return Spread(
+        mean=-late, sd=WEATHER, p05=-late - 1.645 * WEATHER, p50=-late, p95=-late + 1.645 * WEATHER
     )

@@ -16,11 +16,11 @@ from rca.suction.budget import (
 )
 from rca.suction.clean_line import CleanLine
 from rca.suction.inverse import Inverse, InverseDraws
+from rca.suction.priors import NOTICED
 from rca.suction.spread import Spread, spread
 from rca.suction.state import inlet_limit
 
 FloatArray = npt.NDArray[np.float64]
-NOTICED = 0.02e5  # [Pa], a loss smaller than this explains nothing worth mending; judgement
 DEEPEST_SAG = 0.5  # [m], how far a level can fall unseen where no depth is stated; judgement
 LOW = 0.7e5  # [Pa], low for any pump, where no limit is known; common practice, no source
 WEATHER = 1.0e3  # [Pa], standard deviation of the air pressure about the site's mean
@@ -66,6 +66,8 @@ class Share:
     amount: Spread  # [Pa]
     growth: Spread  # [Pa]
     probability: float
+    raised: float  # P(amount above NOTICED)
+    raised_before: float  # the same before the record was seen
     identified: bool  # the record tells this one's amount from the others'
     stepwise: bool  # most of the growth lies between two neighbouring knots
     note: str
@@ -261,6 +263,8 @@ def _cold_share(cold: _Cold, probability: float) -> Share:
         amount=spread(cold.clean) if cold.clean is not None else nothing,
         growth=nothing,
         probability=probability,
+        raised=float(np.mean(cold.clean > NOTICED)) if cold.clean is not None else 0.5,
+        raised_before=0.5,
         identified=cold.clean is not None,
         stepwise=False,
         note=f"At the coldest running, {cold.temperature - 273.15:.0f} \u00b0C, in the line with "
@@ -276,6 +280,8 @@ def _leak_share() -> Share:
         amount=nothing,
         growth=nothing,
         probability=0.0,
+        raised=0.0,
+        raised_before=0.0,
         identified=True,
         stepwise=False,
         note="A leak lets air in and does not lower the inlet pressure; it explains none of the "
@@ -298,6 +304,8 @@ def _shares(
         "level": inverse.offset,
         "transducer": inverse.offset,
     }
+    off = inverse.raised_before[3]
+    before = dict(zip(_SHARED, (*inverse.raised_before[:3], 0.5 * off, off), strict=True))
     shares = []
     for name in _SHARED:
         kind = _EXPLAINED_BY[name]
@@ -310,6 +318,8 @@ def _shares(
                 amount=spread(amounts[name]),
                 growth=spread(growth[name]),
                 probability=chance[name],
+                raised=float(np.mean(amounts[name] > NOTICED)),
+                raised_before=before[name],
                 identified=known,
                 stepwise=_stepwise(track.p50),
                 note=notes[name],

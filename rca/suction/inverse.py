@@ -21,7 +21,7 @@ from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.bounded_draws import bounded_mixture
 from rca.suction.budget import fluid_viscosities, oil_density, pump_flow
 from rca.suction.clean_line import CleanLine, Excitation, clean_line
-from rca.suction.priors import priors_of
+from rca.suction.priors import NOTICED, priors_of
 from rca.suction.rows import Rows, SetAside, suction_rows
 from rca.suction.spread import Spread, spread
 from rca.suction.varying_fit import Prior, VaryingFit, fit_varying
@@ -80,6 +80,9 @@ class Inverse:
     excitation: Excitation
     correlation: tuple[tuple[str, str, float], ...]  # of the draws at the end, pairs beyond 0.8
     clean: CleanLine | None  # the line as described; part of what was believed before
+    # P(above the clean line, or above its first value, by more than NOTICED) before the record was
+    # seen, of viscous, quadratic, depression; and of an offset that lowers the reading
+    raised_before: tuple[float, float, float, float]
     level_known: bool
     headspace_known: bool
     headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
@@ -128,7 +131,8 @@ def estimate_resistances(
     fit = fit_varying(rows.time, y, x, knots, priors)
     rng = np.random.default_rng(seed)
     first, last, contradicted = _ends(fit, rng)
-    tracks = _tracks(fit, priors, rng)
+    prior = _prior_draws(priors, knots.size, rng)
+    tracks = _tracks(fit, prior, rng)
     aside = replace(rows.set_aside, outliers=int((~fit.kept).sum()))
     inverse = Inverse(
         knots_s=tuple(float(k) for k in knots),
@@ -151,6 +155,7 @@ def estimate_resistances(
         excitation=excitation,
         correlation=_correlation(last),
         clean=clean,
+        raised_before=_raised_before(prior, clean),
         level_known=rows.level_known,
         headspace_known=rows.headspace_known,
         headspace_drop=rows.headspace_drop,
@@ -235,14 +240,24 @@ def _prior_draws(priors: tuple[Prior, ...], knots: int, rng: np.random.Generator
     return out
 
 
-def _tracks(
-    fit: VaryingFit, priors: tuple[Prior, ...], rng: np.random.Generator
-) -> dict[str, Track]:
+def _raised_before(
+    prior: FloatArray, clean: CleanLine | None
+) -> tuple[float, float, float, float]:
+    good = (prior[:, [0, -1], :3] >= 0.0).all(axis=(1, 2))
+    first, last = prior[good, 0], prior[good, -1]
+    base = first[:, :3]
+    if clean is not None:
+        base = np.array([[clean.viscous, clean.quadratic, clean.depression]])
+    over = np.mean(last[:, :3] - base > NOTICED, axis=0)
+    off = np.mean(-last[:, 3] > NOTICED)
+    return float(over[0]), float(over[1]), float(over[2]), float(off)
+
+
+def _tracks(fit: VaryingFit, prior: FloatArray, rng: np.random.Generator) -> dict[str, Track]:
     """Every unknown and their sum at every knot, bounds applied at that knot."""
     p, knots = len(NAMES), fit.knots.size
     sums = np.array([1.0, 1.0, 1.0, -1.0])
     rows: dict[str, list[tuple[float, ...]]] = {name: [] for name in (*NAMES, "total")}
-    prior = _prior_draws(priors, knots, rng)
     for k in range(knots):
         after, _, _ = _bounded_at(fit, np.arange(k * p, (k + 1) * p), TRACK_DRAWS, rng)
         before = prior[:, k][(prior[:, k, :3] >= 0.0).all(axis=1)]

@@ -12,6 +12,7 @@ from rca.suction.clean_line import CleanLine
 from rca.suction.varying_fit import Course, Prior
 
 BAR = 1e5
+NOTICED = 0.02 * BAR  # a loss smaller than this explains nothing worth mending; judgement
 LEAST_U = 0.005 * BAR  # a computed loss is not believed closer than this
 LEAST_DEPRESSION_U = 0.003 * BAR
 ANYWHERE = 0.25 * BAR  # a first value that is not as described
