@@ -73,6 +73,43 @@ question = "Which mechanism damaged the pump, and what let it start?"
 # file = "oil/lab-export.csv"
 # where = "sample 26-0117"
 # reason = "taken from the drain"
+
+# [report]                                 # what only people can state; all of it optional
+# language = "en"                          # or "de"
+# paper = "A4"                             # or "Letter"
+# standards = [{{ name = "ASTM E678", deviation = "", effect = "" }}]
+# limits = ["Nothing was sectioned."]      # of the instruction
+# dissent = []                             # another opinion, as its author wrote it
+# dissent_asked = "who was asked for one, and when"
+# stopped = "why the search for causes ended where it did"
+# exposure = "what the examiner knew before reading the parts"
+# place = "where the parts were examined"
+# received = 2026-03-06
+# issued = 2026-03-13
+# approver = ""
+# distribution = ["plant manager"]
+# signatories = [{{ role = "Investigator", name = "A. B.", qualification = "", relationship = "" }}]
+
+# [[barriers]]                             # a control that should have prevented or detected it
+# name = "low inlet pressure alarm"
+# state = "bypassed"                       # worked, failed, bypassed, absent, outside its range
+# note = ""
+# [[other_units]]                          # of the same build, oil or duty
+# unit = "HPU-1"
+# looked = 2026-03-12
+# found = ""
+# [[sought]]                               # asked for and not obtained
+# what = "trend of the motor current"
+# asked = "control room"
+# outcome = "overwritten"
+# effect = "torque before the failure is not known"
+# [[altering_tests]]                       # tests that altered evidence
+# test = "section through the valve plate"
+# exhibit = "EX1"
+# when = 2026-03-12
+# state_before = "photos/p01.jpg"
+# notified = "maker of the pump, insurer"
+# retained = "other half of the plate"
 """
 _TABLES = {
     "photos/photos.csv": PHOTOS,

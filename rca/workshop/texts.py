@@ -83,7 +83,7 @@ sample_point = "return line before the filter"
 
 [[records]]
 file = "pressure/slow.csv"
-time = { column = "Timestamp", zone = "Europe/Vienna", offset = "-42 s" }
+time = { column = "Timestamp", zone = "Europe/Vienna", offset = "-42 s +/- 2 s", offset_method = "clock of the panel read against a radio clock on 2026-03-09" }
 channels = [
   { column = "P_SUCT", quantity = "inlet pressure", unit = "bar(a)" },
   { column = "P_DIS", quantity = "discharge pressure", unit = "bar(g)" },
@@ -93,7 +93,7 @@ channels = [
 ]
 [[records]]
 file = "pressure/slow-until-february.parquet"
-time = { column = "Timestamp", zone = "Europe/Vienna", offset = "-42 s" }
+time = { column = "Timestamp", zone = "Europe/Vienna", offset = "-42 s +/- 2 s", offset_method = "clock of the panel read against a radio clock on 2026-03-09" }
 channels = [
   { column = "P_SUCT", quantity = "inlet pressure", unit = "bar(a)" },
   { column = "P_DIS", quantity = "discharge pressure", unit = "bar(g)" },
@@ -120,6 +120,54 @@ channels = [
 file = "oil/lab-export.csv"
 where = "sample 25-0417"
 reason = "taken from the drain, with settled water in it"
+
+[report]
+distribution = ["plant manager", "maintenance", "maker of the pump"]
+standards = [
+  { name = "ASTM E678, evaluation of scientific or technical data", deviation = "no outside peer review", effect = "the reviewer is of the same company" },
+]
+limits = ["Parts were opened at the mill; nothing was sectioned.", "The relief valve was looked at and not tested on a bench."]
+dissent_asked = "A. Example, B. Example and C. Example on 2026-03-13"
+stopped = "Data exhausted: who released the roof work without a cover on the reservoir is not on record."
+exposure = "C. Example read the parts on 2026-03-09 knowing of the noise and of the clogged strainer."
+place = "workshop of the mill"
+received = 2026-03-06
+issued = 2026-03-13
+approver = "F. Example"
+signatories = [
+  { role = "Investigator", name = "A. Example", qualification = "hydraulics engineer, 11 years", relationship = "employed by the group that owns the mill" },
+  { role = "Reviewer", name = "B. Example", qualification = "reliability engineer, 7 years", relationship = "none with the mill" },
+  { role = "Approved for issue", name = "F. Example", qualification = "", relationship = "" },
+]
+
+[[barriers]]
+name = "inlet pressure on the panel, with an alarm at 0.80 bar(a)"
+state = "bypassed"
+note = "shown, alarm switched off since commissioning"
+[[barriers]]
+name = "strainer inspection at the yearly oil change"
+state = "outside its range"
+note = "the mesh closed within fourteen weeks"
+[[barriers]]
+name = "oil analysis every quarter"
+state = "failed"
+note = "colour and soot of February were reported and not acted upon"
+[[barriers]]
+name = "low-level switch of the reservoir"
+state = "worked"
+
+[[other_units]]
+unit = "HPU-1"
+looked = 2026-03-12
+found = "strainer a quarter closed, inlet 0.86 bar(a) while running"
+[[other_units]]
+unit = "HPU-2"
+
+[[sought]]
+what = "trend of the motor current"
+asked = "control room"
+outcome = "overwritten after 14 days"
+effect = "torque before the failure is not known"
 """
 
 FINDINGS = """id,component,zone,sign,extent,photo,note,by,date
