@@ -5,30 +5,36 @@ import shutil
 import tempfile
 from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import FIRST_COMPLETED, Future, ThreadPoolExecutor, wait
-from contextlib import contextmanager, nullcontext
+from contextlib import AbstractContextManager, contextmanager, nullcontext
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
-from rca.archive.codec import dumps, to_plain
-from rca.archive.record import machine, stable_record
+from rca.archive.codec import dumps
+from rca.archive.crate import crate
+from rca.archive.record import stable_record
 from rca.archive.results import assemble
+from rca.archive.run_record import CRATE, RECORD, run_record, sealed
 from rca.archive.store import Store
 from rca.base.errors import NotebookError, ParameterError, RcaError
 from rca.base.shipped import shipped_folder
 from rca.case.model import Case
+from rca.figures.style import font_folder
 from rca.intake.read import load_case
 from rca.report.render import RenderedReport, render_report
 from rca.runner.execute import check_notebook, read_notebook, run_notebook
 from rca.runner.fork_engine import WarmProcess
 from rca.runner.parameters import declared_parameters
 from rca.runner.plan import Step, plan
+from rca.runner.readings import readings
 from rca.runner.report_folder import whole_folder
 
 Progress = Callable[[str, str], None]  # (stage, "start" | "done" | "failed")
 SEED = 20260306
 FAILED_SUFFIX = "failed-notebooks"
+RESULTS = "results.json"
+RESERVED = frozenset({"case_dir", "store_dir"})
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -54,9 +60,17 @@ class Outcome:
     rendered: RenderedReport
 
 
-def report_case(folder: Path, out: Path, options: Options, progress: Progress) -> Outcome:
+def report_case(
+    folder: Path,
+    out: Path,
+    options: Options,
+    progress: Progress,
+    *,
+    warm: WarmProcess | None = None,
+) -> Outcome:
     """Run every notebook on a case and put its report folder in place.
 
+    ``warm`` lends a warm process that outlives this case; without it one is made.
     Raises CaseError, ParameterError, NotebookError, ArchiveError or RenderError; then ``out`` is
     as it was before.
     """
@@ -77,19 +91,21 @@ def report_case(folder: Path, out: Path, options: Options, progress: Progress) -
                 scratch=scratch,
                 options=options,
                 progress=progress,
+                lent=warm,
             )
         except NotebookError as error:
             kept = _keep_failed(building / "notebooks", out)
             raise NotebookError(f"{error}\nThe executed notebooks are kept in {kept}") from error
         progress("report", "start")
-        results = assemble(case, store, record=_record(case, store, steps, options.seed))
-        (building / "results.json").write_text(dumps(results), encoding="utf-8")
-        (building / "record.json").write_text(
-            dumps(_run_record(results, started, options)), encoding="utf-8"
+        parameters = resolved_parameters(steps, given)
+        results = assemble(
+            case, store, record=_record(case, store, steps, options.seed, parameters)
         )
+        (building / RESULTS).write_text(dumps(results), encoding="utf-8")
         rendered = render_report(
             case, folder, store, results, paper=options.paper, language=options.language
         )
+        _write_record(case, folder, store, results, options, started)
         progress("report", "done")
     return Outcome(folder=out, results=results, rendered=rendered)
 
@@ -105,17 +121,16 @@ def _shared_out(
         step.stage: {p.name for p in declared_parameters(read_notebook(step.path), step.path.name)}
         for step in steps
     }
-    reserved = {"case_dir", "store_dir"}
     for name in parameters:
-        if name in reserved or not any(name in names for names in declared.values()):
-            known = sorted({n for names in declared.values() for n in names} - reserved)
+        if name in RESERVED or not any(name in names for names in declared.values()):
+            known = sorted({n for names in declared.values() for n in names} - RESERVED)
             raise ParameterError(
                 f"no notebook has a parameter {name!r} that may be set; "
                 f"known are {', '.join(known)}"
             )
     given: dict[str, dict[str, object]] = {}
     for step in steps:
-        if not reserved <= declared[step.stage]:
+        if not declared[step.stage] >= RESERVED:
             raise ParameterError(
                 f"{step.path.name} must declare the parameters case_dir and store_dir"
             )
@@ -133,6 +148,7 @@ def _run_all(
     scratch: Path,
     options: Options,
     progress: Progress,
+    lent: WarmProcess | None = None,
 ) -> None:
     """Run the notebooks, each as soon as those it needs are done, at most ``jobs`` at a time."""
 
@@ -156,7 +172,7 @@ def _run_all(
     waiting = list(steps)
     done: set[str] = set()
     with (
-        nullcontext() if options.fresh_kernels else WarmProcess() as warm,
+        _warm(options, lent) as warm,
         ThreadPoolExecutor(max_workers=max(1, options.jobs)) as pool,
     ):
         running: dict[Future[None], Step] = {}
@@ -177,13 +193,42 @@ def _run_all(
                 done.add(step.stage)
 
 
-def _record(case: Case, store: Store, steps: tuple[Step, ...], seed: int) -> dict[str, Any]:
-    knowledge = str(store.read("verdict").check["knowledge"])
-    hashes = {
+def resolved_parameters(
+    steps: tuple[Step, ...], given: Mapping[str, Mapping[str, object]]
+) -> dict[str, dict[str, object]]:
+    """What each stage runs with, defaults included; the folders are left out."""
+    return {
+        step.stage: {
+            p.name: given[step.stage].get(p.name, p.default)
+            for p in declared_parameters(read_notebook(step.path), step.path.name)
+            if p.name not in RESERVED
+        }
+        for step in steps
+    }
+
+
+def _record(
+    case: Case,
+    store: Store,
+    steps: tuple[Step, ...],
+    seed: int,
+    parameters: dict[str, dict[str, object]],
+) -> dict[str, Any]:
+    return stable_record(
+        case,
+        knowledge=str(store.read("verdict").check["knowledge"]),
+        seed=seed,
+        notebooks=notebook_digests(steps),
+        parameters=parameters,
+    )
+
+
+def notebook_digests(steps: tuple[Step, ...]) -> dict[str, str]:
+    """SHA-256 over the source of each notebook's cells, by file name."""
+    return {
         step.path.name: _source_digest(step.path) + (" (site's own)" if step.own else "")
         for step in steps
     }
-    return stable_record(case, knowledge=knowledge, seed=seed, notebooks=hashes)
 
 
 def _source_digest(path: Path) -> str:
@@ -194,25 +239,60 @@ def _source_digest(path: Path) -> str:
     return digest.hexdigest()
 
 
-def _run_record(results: dict[str, Any], started: datetime, options: Options) -> dict[str, Any]:
-    return {
-        "format": 1,
-        **results["record"],
-        "started": started.isoformat(timespec="seconds"),
-        "ended": datetime.now(UTC).isoformat(timespec="seconds"),
-        "machine": machine(),
-        "options": to_plain(
-            {
-                "notebooks": str(options.notebooks) if options.notebooks else "shipped",
-                "fresh_kernels": options.fresh_kernels,
-                "jobs": options.jobs,
-                "parameters": dict(options.parameters or {}),
-                "paper": options.paper,
-                "language": options.language,
-            }
-        ),
-        "results_sha256": hashlib.sha256(dumps(results).encode()).hexdigest(),
-    }
+def _write_record(
+    case: Case,
+    folder: Path,
+    store: Store,
+    results: dict[str, Any],
+    options: Options,
+    started: datetime,
+) -> None:
+    """``record.json`` over everything written so far, and the RO-Crate metadata that links it."""
+    out = store.folder
+    parameters = results["record"]["parameters"]
+    record = run_record(
+        case,
+        folder,
+        results,
+        readings=readings(case, folder, store),
+        options={
+            "notebooks": "site's own" if options.notebooks else "shipped",
+            "fresh_kernels": options.fresh_kernels,
+            "jobs": options.jobs,
+            "parameters": dict(options.parameters or {}),
+            "paper": options.paper,
+            "language": options.language,
+            "cell_timeout_s": options.cell_timeout_s,
+        },
+        streams={"process": options.seed}
+        | {stage: p["seed"] for stage, p in parameters.items() if "seed" in p},
+        fonts=font_folder(),
+        started=started,
+        ended=datetime.now(UTC),
+        warnings=_said(out / "notebooks"),
+    )
+    full = sealed(record, out)
+    (out / RECORD).write_text(dumps(full), encoding="utf-8")
+    (out / CRATE).write_text(dumps(crate(full)), encoding="utf-8")
+
+
+def _said(notebooks: Path) -> list[str]:
+    """What the notebooks wrote to standard error, by notebook and cell."""
+    return [
+        f"{path.name}, cell {index}: {output.text.strip()}"
+        for path in sorted(notebooks.glob("*.ipynb"))
+        for index, cell in enumerate(read_notebook(path).cells)
+        for output in cell.get("outputs", ())
+        if output.output_type == "stream" and output.name == "stderr"
+    ]
+
+
+def _warm(
+    options: Options, lent: WarmProcess | None
+) -> AbstractContextManager[WarmProcess | None]:
+    if options.fresh_kernels:
+        return nullcontext()
+    return WarmProcess() if lent is None else nullcontext(lent)
 
 
 def _keep_failed(notebooks: Path, out: Path) -> Path:
