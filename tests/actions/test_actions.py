@@ -88,7 +88,14 @@ def test_the_example_is_read() -> None:
         "min(inlet pressure) >= 0.85 bar(a) and",
         "and min(inlet pressure) >= 0.85 bar(a)",
         "min(inlet pressure) is fine",
-        "no recurrence",
+        "no recurrence for ever",
+        "no recurrence of gremlins",
+        "no recurrence for 3 old moons",
+        "no recurrences please",
+        "max(oil temperature) < 60 bar",
+        "min(inlet pressure) >= 0,85 bar(a)",
+        "min(inlet pressure) >= 0.85 bar for 30 d",
+        "min(inlet pressure) >= 0.85 bar(a) for 30 d after done please",
         ">= 0.85 bar(a)",
         "min(max(inlet pressure)) > 1",
         "__import__('os').system('x')",
@@ -97,8 +104,31 @@ def test_the_example_is_read() -> None:
     ],
 )
 def test_a_malformed_condition_is_answered(text: str) -> None:
-    with pytest.raises(ConditionError, match=r"expected|write for example|for example|longer"):
+    with pytest.raises(ConditionError, match=r"expected|for example|longer|known"):
         parse_condition(text)
+
+
+@pytest.mark.parametrize(
+    ("text", "pointed"),
+    [
+        ("min(inlet presure) >= 0.85 bar(a)", "inlet presure"),
+        ("minimum(inlet pressure) >= 0.85 bar(a)", "minimum"),
+        ("min(inlet pressure) => 0.85 bar(a)", "=>"),
+        ("min(inlet pressure) >= 0.85 bar for 3 d", "0.85 bar"),
+        ("min(inlet pressure) >= 0.85 bar(a) for 30 moons", "moons"),
+        ("min(inlet pressure) >= 0.85 bar(a) after Easter", "Easter"),
+        ("max(oil temperature) < 60 degC and min(flow) >= 3 kg", "3 kg"),
+        ("no recurrence of gremlins for 3 old intervals", "gremlins"),
+        ("max(oil temperature) < 60 degC for 3 d soon", "soon"),
+    ],
+)
+def test_the_carets_stand_under_the_wrong_words(text: str, pointed: str) -> None:
+    with pytest.raises(ConditionError) as caught:
+        parse_condition(text)
+    error = caught.value
+    assert error.line[error.start : error.end] == pointed
+    _, line, carets = str(error).rsplit("\n", 2)
+    assert line[carets.index("^") : carets.rindex("^") + 1] == pointed
 
 
 def test_a_pressure_that_says_neither_is_answered_in_the_review() -> None:
