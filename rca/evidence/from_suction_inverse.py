@@ -131,7 +131,7 @@ def _level(share: Share, inverse: Inverse, sources: tuple[Source, ...]) -> Evide
     if inverse.level_known:
         seen = min(max(sunk / LEVEL_SEEN, 0.0), 1.0)
         likelihood = {"no": 0.9 - 0.85 * seen, "yes": 0.25 + 0.65 * seen}
-        words = f"The recorded level takes {max(sunk, 0.0) / 1e5:.3f} bar from the inlet."
+        words = f"The recorded level takes {abs(max(sunk, 0.0)) / 1e5:.3f} bar from the inlet."
     else:
         likelihood = weighed(share.raised, share.raised_before)
         words = (

@@ -2,14 +2,19 @@
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.case.site import local_atmosphere
-from rca.suction.budget import line_residence, pump_flow
+from rca.case.vocabulary import PumpKind
+from rca.physics.flow_pulsation import rigid_column_dip
+from rca.suction.budget import line_residence, oil_density, pump_flow
 from rca.suction.counterfactual import Change, Counterfactual, NotComputed, counterfactuals
-from rca.suction.explanations import WEATHER, Explanation, Explanations, explain
-from rca.suction.inverse import Inverse, estimate_resistances
+from rca.suction.explanations import WEATHER, Explanation, Explanations, excesses, explain
+from rca.suction.inverse import Inverse, InverseDraws, estimate_resistances
 from rca.suction.measured import MeasuredInlet, measure_inlet
+from rca.suction.path import Path, air_along_path
 from rca.suction.priors import NOTICED
 from rca.suction.spread import Spread
 from rca.suction.state import (
@@ -21,6 +26,7 @@ from rca.suction.state import (
     inlet_state,
     missing_inputs,
 )
+from rca.suction.tornado import Swing, coldest_as_found, coldest_within_limit, margin_swings
 
 __all__ = [
     "RELEASED_MATTERS",
@@ -34,6 +40,7 @@ __all__ = [
     "inlet_state",
     "transducer_error",
 ]
+Found = tuple[Inverse, InverseDraws] | str
 COLD_BELOW_NORMAL = 30.0  # [K], a start is taken this much colder where none is stated
 
 
@@ -53,6 +60,12 @@ class SuctionCheck:
     explanations: Explanations | None = None
     counterfactuals: tuple[Counterfactual, ...] = ()
     not_computed: tuple[NotComputed, ...] = ()
+    paths: tuple[Path, ...] = ()  # released air along the line, clean and as found
+    swings_warm: tuple[Swing, ...] = ()  # which input moves the clean line's inlet, warm
+    swings_cold: tuple[Swing, ...] = ()  # and at the cold start
+    coldest_clean: float | None = None  # [K], the clean line holds the limit down to here
+    coldest_found: float | None = None  # [K], the line as found
+    pulsation_bound: float | None = None  # [Pa], dip of a rigid oil column; an upper bound
     missing: tuple[str, ...] = ()
     seed: int = 0
     samples: int = 0
@@ -93,9 +106,66 @@ def check_suction(
         explanations=None if isinstance(found, str) else explain(case, *found, seed=seed),
         counterfactuals=changes,
         not_computed=not_computed,
+        paths=_paths(case, found, seed),
+        swings_warm=margin_swings(case, normal.temperature, seed=seed) if normal else (),
+        swings_cold=margin_swings(case, cold.temperature, seed=seed) if cold else (),
+        coldest_clean=coldest_within_limit(case),
+        coldest_found=_coldest_found(case, found, changes),
+        pulsation_bound=_pulsation_bound(case),
         missing=missing,
         seed=seed,
         samples=samples,
+    )
+
+
+def _paths(case: Case, found: Found, seed: int) -> tuple[Path, ...]:
+    paths = [air_along_path(case, seed=seed)]
+    if not isinstance(found, str):
+        inverse, inverse_draws = found
+        over = excesses(case, inverse, inverse_draws, inverse.clean, np.random.default_rng(seed))
+        middle = {k: max(float(np.median(v)), 0.0) for k, v in over.items()}
+        paths.append(
+            air_along_path(
+                case,
+                seed=seed,
+                state="as found",
+                viscous_excess=middle["viscous"],
+                quadratic_excess=middle["quadratic"],
+                depression=middle["depression"],
+                head_loss=middle["level"],
+            )
+        )
+    return tuple(p for p in paths if p is not None)
+
+
+def _coldest_found(case: Case, found: Found, changes: tuple[Counterfactual, ...]) -> float | None:
+    state = next((c for c in changes if c.change is Change.ALL), None)
+    if isinstance(found, str) or state is None:
+        return None
+    return coldest_as_found(
+        case,
+        inlet=state.before.p50,
+        viscous=float(np.median(found[1].last[:, 0])),
+        temperature=found[0].reference_temperature,
+    )
+
+
+def _pulsation_bound(case: Case) -> float | None:
+    """Dip of the inlet by the pump's own pulsation if the oil column were rigid [Pa]."""
+    flow, pump = pump_flow(case), case.pump
+    axial = pump.kind is PumpKind.AXIAL_PISTON
+    if not axial or flow is None or pump.speed is None or (pump.elements or 0) < 3:
+        return None
+    inertance = sum(
+        p.length.value * p.count / (np.pi / 4.0 * p.bore.value**2)
+        for p in case.suction_line
+        if p.length is not None and p.bore is not None
+    )
+    if not inertance:
+        return None
+    rho = oil_density(case, case.fluid.temperature.value if case.fluid.temperature else 313.15)
+    return float(
+        rigid_column_dip(rho, inertance, float(flow), pump.speed.value, pump.elements or 3)
     )
 
 

@@ -117,7 +117,7 @@ def computed_state(
     condition: Condition | None = None,
 ) -> InletState:
     """The inlet at one flow [m3/s] and temperature [K] for every draw of the uncertain inputs."""
-    pressure, parts = _sampled(case, flow, temperature, draw, condition)
+    pressure, parts = sampled_losses(case, flow, temperature, draw, condition)
     released = released_in_line(case, pressure, temperature, draw)
     viscosities = fluid_viscosities(case)
     nominal = pressure_budget(case, flow, temperature, condition)
@@ -135,13 +135,14 @@ def computed_state(
     )
 
 
-def _sampled(
+def sampled_losses(
     case: Case,
     flow: float,
     temperature: float,
     draw: dict[str, FloatArray],
-    condition: Condition | None,
+    condition: Condition | None = None,
 ) -> tuple[FloatArray, dict[str, FloatArray]]:
+    """Inlet pressure [Pa] and the loss of each part [Pa] for every draw."""
     q = np.full_like(draw["loss"], flow)
     budget = pressure_budget(
         case,
