@@ -9,7 +9,9 @@ from rca import __version__
 COMMANDS = {
     "new": "Make a case folder that already passes the check.",
     "check": "What of a case is usable, wrong or missing.",
-    "report": "Run the notebooks, write the report folder.",
+    "report": "Run the notebooks, write the report folder; many cases at once too.",
+    "rerun": "The auditor's rerun: recompute, compare, say what differs and why.",
+    "bundle": "One archive with evidence, notebooks, results and report.",
     "compare": "Past incidents side by side: what recurs, what is alike, what helped.",
 }
 
