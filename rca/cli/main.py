@@ -12,6 +12,7 @@ COMMANDS = {
     "report": "Run the notebooks, write the report folder; many cases at once too.",
     "rerun": "The auditor's rerun: recompute, compare, say what differs and why.",
     "bundle": "One archive with evidence, notebooks, results and report.",
+    "actions": "Corrective actions across cases: due, overdue, proved or not.",
     "compare": "Past incidents side by side: what recurs, what is alike, what helped.",
 }
 

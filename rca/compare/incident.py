@@ -44,6 +44,7 @@ class PastAction:
     done: date | None = None
     proof: str = ""
     reason: str = ""
+    objections: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -226,4 +227,5 @@ def _action(plain: object, number: int) -> PastAction:
         done=_day(row.get("done"), f"actions[{number}].done"),
         proof=str(row.get("proof", "")),
         reason=str(row.get("reason", "")),
+        objections=tuple(map(str, row.get("objections") or ())),
     )

@@ -4,13 +4,15 @@
               currency, invented, source, sha256, ended)
     mechanisms(n, name, p, prior)   causes(n, name, p)     signs(n, name, seen)
     numbers(n, name, value)         words(n, name, value)
-    actions(n, id, kind, text, cause, owner, status, due, done, proof, reason)
+    actions(n, id, kind, text, cause, owner, status, due, done, proof, reason,
+            objections)
     refused(source, reason)         replaced(source)
 
 Anyone may open the file with DuckDB and ask it other questions. Values go in as data, never as
 SQL, and the store reads no other file and loads no extension.
 """
 
+import json
 from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
 from pathlib import Path
@@ -50,7 +52,7 @@ _TABLES = {
     "words": ("n", "name", "word"),
     "actions": (
         *("n", "id", "kind", "text", "cause", "owner", "status", "due", "done"),
-        *("proof", "reason"),
+        *("proof", "reason", "objections"),
     ),
     "refused": ("source", "reason"),
     "replaced": ("source",),
@@ -130,7 +132,10 @@ def _rows(gathered: Gathered) -> dict[str, list[tuple[Any, ...]]]:
         rows["numbers"] += [(n, name, value) for name, value in one.numbers.items()]
         rows["words"] += [(n, name, word) for name, word in one.words.items()]
         rows["actions"] += [
-            (n, a.id, a.kind, a.text, a.cause, a.owner, a.status, a.due, a.done, a.proof, a.reason)
+            (
+                *(n, a.id, a.kind, a.text, a.cause, a.owner, a.status, a.due, a.done),
+                *(a.proof, a.reason, json.dumps(a.objections)),
+            )
             for a in one.actions
         ]
     rows["refused"] = [(r.source, r.reason) for r in gathered.refused]
@@ -230,8 +235,17 @@ def _words(store: duckdb.DuckDBPyConnection, count: int) -> tuple[tuple[str, ...
 
 def _actions(store: duckdb.DuckDBPyConnection) -> tuple[tuple[int, PastAction], ...]:
     rows = store.execute(
-        "SELECT n, id, kind, text, cause, owner, status, due, done, proof, reason "
+        "SELECT n, id, kind, text, cause, owner, status, due, done, proof, reason, "
+        "objections "
         "FROM actions ORDER BY n, id"
     ).fetchall()
     names = ("id", "kind", "text", "cause", "owner", "status", "due", "done", "proof", "reason")
-    return tuple((row[0], PastAction(**dict(zip(names, row[1:], strict=True)))) for row in rows)
+    return tuple(
+        (
+            row[0],
+            PastAction(
+                **dict(zip(names, row[1:-1], strict=True)), objections=tuple(json.loads(row[-1]))
+            ),
+        )
+        for row in rows
+    )

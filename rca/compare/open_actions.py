@@ -88,11 +88,13 @@ def _row(
     case: CaseActions, action: PastAction, today: date, soon_days: int, only_containment: bool
 ) -> Row:
     late = (today - action.due).days if action.due else None
+    told = " ".join(action.objections)
     warnings = []
-    if only_containment and action.kind == "containment":
+    if only_containment and action.kind == "containment" and "only containment" not in told:
         warnings.append("the case has only containment; nothing yet removes the cause")
     if action.due is None and action.done is None and action.status not in ENDED:
         warnings.append("it has no due date")
+    warnings = [w for w in warnings if w not in told]
     return Row(
         case=case.case,
         asset=case.asset,

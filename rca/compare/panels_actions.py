@@ -159,7 +159,7 @@ def register_words(found: Register) -> str:
 
 def _row(r: Row) -> tuple[str, ...]:
     a = r.action
-    why = "; ".join(text for text in (a.reason, *r.warnings) if text)
+    why = "; ".join(text for text in (a.reason, *r.warnings, *a.objections) if text)
     return (
         r.standing.value,
         r.case,
