@@ -2,7 +2,7 @@
 
 Model of a running bin, with the losses taken at one reference state (warm, full flow):
 
-    p = still + offset - viscous (nu rho Q)/(nu rho Q)_ref - quadratic (rho Q^2)/(rho Q^2)_ref
+    p = still + offset - viscous (nu rho Q)/(nu rho Q)_ref - quadratic Q^2/Q_ref^2
         - depression
 
 and p = still + offset at rest; all four move in time. A loss that follows viscosity is told from
@@ -179,10 +179,15 @@ def reference_state(case: Case, rows: Rows) -> tuple[float, float]:
 
 
 def regressors(rows: Rows, flow: float, nu: float, rho: float) -> FloatArray:
-    """Columns of viscous, quadratic, depression and offset for each row, one at the reference."""
+    """Columns of viscous, quadratic, depression and offset for each row, one at the reference.
+
+    The quadratic loss is taken at the reference density. The two per cent that density moves over
+    30 K would else tell a quadratic loss from a depression at a single flow, by less than any
+    model of the line is good for.
+    """
     run = rows.running.astype(float)
     viscous = rows.nu * rows.rho * rows.flow / (nu * rho * flow)
-    quadratic = rows.rho * rows.flow**2 / (rho * flow**2)
+    quadratic = rows.flow**2 / flow**2
     return np.column_stack([-viscous * run, -quadratic * run, -run, np.ones_like(run)])
 
 
