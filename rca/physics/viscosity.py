@@ -1,14 +1,13 @@
-"""Kinematic viscosity of a hydraulic oil against temperature, and viscosity index."""
+"""Kinematic viscosity of a hydraulic oil against temperature."""
 
 import numpy as np
 import numpy.typing as npt
 
 from rca.base.errors import OutOfRangeError
+from rca.physics.viscosity_index import viscosity_at_100
 
 FloatArray = npt.NDArray[np.float64]
 _MM2 = 1e-6
-# viscosity index tables of ASTM D2270 below 70 mm2/s at 100 degC enter through L and H fits only
-# above; see viscosity_index
 
 
 def walther_constants(nu_1: float, t_1: float, nu_2: float, t_2: float) -> tuple[float, float]:
@@ -52,16 +51,12 @@ def grade_viscosities(iso_vg: int, *, viscosity_index: float = 100.0) -> tuple[f
     """Viscosity at 40 and 100 degC [m2/s] of an ISO grade at its mid-point.
 
     The grade allows +/-10 % at 40 degC (ISO 3448:1992); the value at 100 degC follows from the
-    viscosity index by search on D2270 above VG 10. Both are class values, not this oil's.
-    Raises OutOfRangeError for a grade outside 10 to 460.
+    viscosity index by ASTM D2270. Both are class values, not this oil's.
+    Raises OutOfRangeError for a grade outside 10 to 1500 or an index no oil of it can have.
     """
-    if not 10 <= iso_vg <= 460:
-        raise OutOfRangeError(f"class values are offered for ISO VG 10 to 460; got {iso_vg}")
-    # nu100 of VI 100 oils, common practice, no source; VI shifts it by about 0.012 mm2/s a point
-    grades = np.log([10.0, 15, 22, 32, 46, 68, 100, 150, 220, 320, 460])
-    values = np.log([2.6, 3.4, 4.3, 5.4, 6.8, 8.7, 11.2, 14.7, 18.9, 24.0, 30.4])
-    nu_100 = float(np.exp(np.interp(np.log(iso_vg), grades, values)))
-    return iso_vg * _MM2, nu_100 * (1.0 + 0.004 * (viscosity_index - 100.0)) * _MM2
+    if not 10 <= iso_vg <= 1500:
+        raise OutOfRangeError(f"class values are offered for ISO VG 10 to 1500; got {iso_vg}")
+    return iso_vg * _MM2, viscosity_at_100(iso_vg * _MM2, viscosity_index)
 
 
 def _z(nu: FloatArray) -> FloatArray:
