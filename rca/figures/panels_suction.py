@@ -3,8 +3,10 @@
 from rca.base.panel import Card, Column, FigureRef, Panel, Section, Table
 from rca.case.model import Case
 from rca.figures.numbers import bar, celsius, share, with_u
+from rca.figures.panels_suction_inverse import panels_inverse
 from rca.suction.check import InletState, SuctionCheck
 from rca.suction.measured import MeasuredInlet, Regime
+from rca.suction.tornado import COLDEST
 
 BUDGET_LIMITS = (
     "Steady flow at full displacement; pulsation of the flow is not in it, so short dips lie "
@@ -25,6 +27,7 @@ def panels_suction(case: Case, check: SuctionCheck) -> Section:
     panels = [_budget(case, check)]
     if check.measured is not None:
         panels.append(_measured(check, check.measured))
+        panels += panels_inverse(check)
     panels.append(_air(check))
     return Section(stage="suction", title="Suction side", panels=tuple(panels))
 
@@ -53,12 +56,13 @@ def _budget(case: Case, check: SuctionCheck) -> Panel:
             f"{celsius(cold.temperature)} \u00b0C{limit}."
         ),
         status="within the limit" if warm.below_limit < 0.5 else "below the limit",
-        paragraphs=(f"Limit: {check.limit_source}.",),
+        paragraphs=(f"Limit: {check.limit_source}.", *_cold_words(check), *_pulsation(check)),
         tables=(_parts(warm, cold), _inputs(case)),
         figures=(
             FigureRef(
                 name="suction-budget",
-                caption="Pressure budget of the clean line, warm.",
+                caption="Pressure budget of the clean line, warm"
+                + ("; below it, what the record shows beyond." if check.inverse else "."),
                 alt=f"Of the air's {bar(check.atmosphere)} bar, "
                 f"{bar(warm.pressure.mean)} bar(a) remain at the pump inlet of the clean line.",
             ),
@@ -69,6 +73,7 @@ def _budget(case: Case, check: SuctionCheck) -> Panel:
                 alt=f"The clean line falls to {bar(cold.pressure.mean)} bar(a) at "
                 f"{celsius(cold.temperature)} degrees Celsius.",
             ),
+            *_swings(check),
         ),
         limits=BUDGET_LIMITS,
         card=Card(
@@ -78,6 +83,50 @@ def _budget(case: Case, check: SuctionCheck) -> Panel:
             range_of_use=(3, "laminar to turbulent, oil above its pour point"),
             uncertainty=(3, "quasi-random draws of losses, viscosity, weather"),
             robustness=(3, "the answer moves little within the stated uncertainties"),
+        ),
+    )
+
+
+def _cold_words(check: SuctionCheck) -> tuple[str, ...]:
+    said = []
+    if check.coldest_clean is not None and check.coldest_clean > COLDEST:
+        said.append(
+            f"At full flow the clean line holds the limit down to {celsius(check.coldest_clean)} "
+            "\u00b0C of the oil."
+        )
+    if check.coldest_found is not None:
+        said.append(
+            f"The line as found at the end of the record holds it from "
+            f"{celsius(check.coldest_found)} \u00b0C upwards."
+        )
+    return tuple(said)
+
+
+def _pulsation(check: SuctionCheck) -> tuple[str, ...]:
+    if check.pulsation_bound is None:
+        return ()
+    return (
+        f"The pistons' own pulsation would dip the inlet by at most "
+        f"{bar(check.pulsation_bound)} bar if the oil column were rigid (Newton's second law, "
+        "ideal piston kinematics); oil, hose and released air give way, so the true dip is a "
+        "fraction of that and is read from a fast record of the inlet.",
+    )
+
+
+def _swings(check: SuctionCheck) -> tuple[FigureRef, ...]:
+    if not check.swings_warm or not check.swings_cold:
+        return ()
+    warm, cold = check.swings_warm[0], check.swings_cold[0]
+    words = (
+        f"Warm, {warm.name} moves the clean line's inlet most, by {bar(warm.width, digits=3)} bar "
+        f"from 5 to 95 %; at the cold start {cold.name}, by {bar(cold.width, digits=3)} bar."
+    )
+    return (
+        FigureRef(
+            name="suction-swings",
+            caption="How far each uncertain input moves the clean line's inlet: hatched at its "
+            "5 % point, filled at its 95 % point.",
+            alt=words,
         ),
     )
 
@@ -257,5 +306,31 @@ def _air(check: SuctionCheck) -> Panel:
         )
         if rows
         else (),
+        figures=_path_figure(check),
         limits=AIR_LIMITS,
+        card=Card(
+            verification=(3, "equilibrium and rate held against their exact limits in the tests"),
+            validation=(1, "released air is not measured; nothing to hold it against"),
+            input_pedigree=(2, "Bunsen coefficient of the class unless measured"),
+            range_of_use=(3, "Henry's law below atmospheric pressure"),
+            uncertainty=(3, "the time constant is spread over two decades"),
+            robustness=(2, "the amount moves with the unknown rate more than with the pressure"),
+        ),
+    )
+
+
+def _path_figure(check: SuctionCheck) -> tuple[FigureRef, ...]:
+    if not check.paths:
+        return ()
+    last = check.paths[-1]
+    end = last.stations[-1]
+    return (
+        FigureRef(
+            name="suction-path",
+            caption="Pressure and released air after each part of the suction line, with 90 % "
+            "band; dashed: at equilibrium.",
+            alt=f"In the line {last.state.removesuffix(' line')}, "
+            f"{100 * end.released.p50:.1f} % gas per oil reach the pump, "
+            f"{100 * end.released.p05:.1f} to {100 * end.released.p95:.1f} %.",
+        ),
     )

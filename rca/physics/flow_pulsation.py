@@ -18,7 +18,8 @@ def acceleration_head(
 
     ``length`` [m], ``velocity`` [m/s], ``speed`` [1/s]. For slow pumps with short, stiff pipes;
     for a swash-plate pump at working speed a gross upper bound, as waves and the elasticity of
-    hose and oil take most of it up. Source: Hydraulic Institute and API 674 practice (from memory).
+    hose and oil take most of it up. Source: Hydraulic Institute and API 674
+    practice (from memory).
     Raises OutOfRangeError for a number of plungers without a coefficient.
     """
     if plungers not in PLUNGER_COEFFICIENT:
