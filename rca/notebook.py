@@ -15,7 +15,7 @@ under the user's temporary folder, so that the notebooks run one after another f
 import hashlib
 import tempfile
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime
 from pathlib import Path
 from typing import TypeVar
@@ -23,6 +23,8 @@ from typing import TypeVar
 from IPython.display import HTML, display
 from matplotlib.figure import Figure
 
+from rca.actions.effect import effects
+from rca.actions.failures import failures_of
 from rca.actions.review import ActionsCheck, review_actions
 from rca.archive.codec import from_plain, to_plain
 from rca.archive.store import StageResult, Store, split_items
@@ -43,11 +45,13 @@ from rca.evidence.from_records import from_records
 from rca.evidence.from_statements import from_statements
 from rca.evidence.from_suction import from_suction
 from rca.evidence.item import EvidenceItem, NotAssessed
+from rca.figures.actions import figures_actions
 from rca.figures.damage import figures_damage
 from rca.figures.discharge import figures_discharge
 from rca.figures.notebook_page import section_html
 from rca.figures.oil import figures_oil
-from rca.figures.panels_case import panels_actions, panels_intake
+from rca.figures.panels_actions import panels_actions
+from rca.figures.panels_case import panels_intake
 from rca.figures.panels_damage import panels_damage
 from rca.figures.panels_discharge import panels_discharge
 from rca.figures.panels_oil import panels_oil
@@ -84,6 +88,7 @@ __all__ = [
     "check_oil",
     "check_records",
     "check_suction",
+    "figures_actions",
     "figures_damage",
     "figures_discharge",
     "figures_oil",
@@ -232,11 +237,17 @@ class Investigation:
             return (state.pressure.mean, state.pressure.sd), state.released.p50
         return None, None
 
-    def review_actions(self) -> ActionsCheck:
+    def review_actions(self, *, seed: int) -> ActionsCheck:
         """Every action against its guards and the records, as of the last day of the evidence."""
-        return review_actions(
-            self.case.actions, self.aligned(), convert=self._convert, as_of=self._last_day()
+        day, record = self._last_day(), self.aligned()
+        check = review_actions(
+            self.case.actions,
+            record,
+            convert=self._convert,
+            as_of=day,
+            failures=failures_of(self.case, until=day),
         )
+        return replace(check, effects=effects(self.case, self.case.actions, record, seed=seed))
 
     def _convert(self, text: str, quantity: str) -> float:
         dimension = QUANTITY_DIMENSIONS[quantity]

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from datetime import date
 
 from rca.actions.condition import Clause, parse_condition
+from rca.actions.effect import Effect
 from rca.actions.proof import (
     ClauseOutcome,
     Convert,
@@ -82,6 +83,7 @@ class ActionsCheck:
 
     as_of: date | None  # last day of the evidence; overdue is judged against it
     actions: tuple[ActionReview, ...] = ()
+    effects: tuple[Effect, ...] = ()  # predicted beside measured
 
 
 def review_actions(

@@ -1,8 +1,7 @@
-"""Panels of intake and actions: what the folder holds, what was set aside, what is being done."""
+"""Panels of intake: what the folder holds, what was set aside."""
 
 from collections.abc import Sequence
 
-from rca.actions.review import ActionsCheck
 from rca.base.errors import Problem
 from rca.base.panel import Column, Panel, Section, Table
 from rca.case.model import Case
@@ -99,78 +98,4 @@ def _custody(case: Case) -> Table:
         ),
         rows=tuple(rows),
         marks=tuple(marks),
-    )
-
-
-def panels_actions(check: ActionsCheck) -> Section:
-    """The section of the actions."""
-    rows = tuple(
-        (
-            a.id,
-            a.kind,
-            a.text,
-            a.cause or "none named",
-            a.owner,
-            a.due.isoformat() if a.due else "",
-            a.done.isoformat() if a.done else "",
-            a.status + (" (overdue)" if a.overdue else ""),
-            a.proof.value,
-        )
-        for a in check.actions
-    )
-    remarks = tuple(
-        (a.id, a.verify or "no condition", a.reason, "; ".join(a.objections) or "none")
-        for a in check.actions
-    )
-    proved = sum(a.proof.value == "proved" for a in check.actions)
-    day = check.as_of.isoformat() if check.as_of else "an unknown day"
-    return Section(
-        stage="actions",
-        title="Actions",
-        panels=(
-            Panel(
-                key="actions.register",
-                title="Corrective actions",
-                question="What is being done, and is it proved?",
-                answer=(
-                    f"{len(check.actions)} actions, {proved} proved, as of {day}."
-                    if check.actions
-                    else "No action is on record."
-                ),
-                tables=(
-                    Table(
-                        name="actions",
-                        title="Actions",
-                        columns=(
-                            Column(title="Id"),
-                            Column(title="Kind"),
-                            Column(title="Action"),
-                            Column(title="Cause it addresses"),
-                            Column(title="Owner"),
-                            Column(title="Due"),
-                            Column(title="Done"),
-                            Column(title="Status"),
-                            Column(title="Proof"),
-                        ),
-                        rows=rows,
-                    ),
-                    Table(
-                        name="actions-proof",
-                        title="Proof and objections",
-                        columns=(
-                            Column(title="Id"),
-                            Column(title="Condition"),
-                            Column(title="What the records say"),
-                            Column(title="Objections"),
-                        ),
-                        rows=remarks,
-                        note="The owner of an action can't verify it; nothing closes without "
-                        "proof. Records after the day the action was done count.",
-                    ),
-                )
-                if check.actions
-                else (),
-                limits=("Software output authorises nothing; a competent person decides.",),
-            ),
-        ),
     )
