@@ -17,8 +17,8 @@ METHOD = (
     "and is shared between the first two.",
     "Bayesian linear regression; before the record the line is believed as described (15 % on "
     "line losses, 35 % on the strainer, common practice) or to start or run off anywhere, each of "
-    "the four equally. Bands are widened for autocorrelation (Flyvbjerg and Petersen 1989) and hold "
-    "90 %; losses can't be negative.",
+    "the four equally. Bands are widened for autocorrelation (Flyvbjerg and Petersen 1989) and "
+    "hold 90 %; losses can't be negative.",
     "Flow is speed times displacement unless it is recorded: a pump set back draws less, and a "
     "resistance found with it is then too small.",
 )
@@ -110,8 +110,8 @@ def _resistances(inverse: Inverse) -> Panel:
             FigureRef(
                 name="suction-map",
                 caption="Inlet pressure of the line as found over flow and oil temperature "
-                "(grey); the limit for the line as found (orange) and clean (green, dashed); recorded "
-                "bins, orange squares below the limit.",
+                "(grey); the limit for the line as found (orange) and clean (green, dashed); "
+                "recorded bins, orange squares below the limit.",
                 alt="Where the recorded flow and temperature lie against the limit of the line as "
                 "found and clean.",
             ),
@@ -305,9 +305,8 @@ def _leading_words(found: Explanations) -> str:
             f"probability {share(found.leading_probability)}."
         )
     return (
-        f"The {found.leading} takes most: {interval(lead.amount)} bar of "
-        f"{bar(found.drop.p50, digits=3)} bar; probability {share(found.leading_probability)} that "
-        "it is the largest."
+        f"The {found.leading} lowers the inlet most, by {interval(lead.amount)} bar; probability "
+        f"{share(found.leading_probability)} that it is the largest."
     )
 
 
