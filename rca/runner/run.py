@@ -6,7 +6,7 @@ import tempfile
 from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import FIRST_COMPLETED, Future, ThreadPoolExecutor, wait
 from contextlib import AbstractContextManager, contextmanager, nullcontext
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
@@ -47,6 +47,7 @@ class Options:
     seed: int = SEED
     cell_timeout_s: float = 1800.0
     parameters: Mapping[str, object] | None = None
+    stage_parameters: Mapping[str, Mapping[str, object]] = field(default_factory=dict)
     paper: str = "A4"
     language: str = "en"
 
@@ -75,7 +76,7 @@ def report_case(
     as it was before.
     """
     steps = plan(shipped_folder("notebooks"), options.notebooks)
-    given = _shared_out(steps, options.parameters or {})
+    given = _shared_out(steps, options.parameters or {}, options.stage_parameters)
     progress("case", "start")
     case = load_case(folder)
     progress("case", "done")
@@ -111,9 +112,14 @@ def report_case(
 
 
 def _shared_out(
-    steps: tuple[Step, ...], parameters: Mapping[str, object]
+    steps: tuple[Step, ...],
+    parameters: Mapping[str, object],
+    of_stages: Mapping[str, Mapping[str, object]],
 ) -> dict[str, dict[str, object]]:
     """Each given parameter goes to every notebook that declares it; one nobody knows is refused.
+
+    ``of_stages`` are those of an earlier run, by stage; what a notebook no longer declares is
+    left out, and shows as a difference of the parameters.
 
     Raises ParameterError before anything runs.
     """
@@ -134,7 +140,8 @@ def _shared_out(
             raise ParameterError(
                 f"{step.path.name} must declare the parameters case_dir and store_dir"
             )
-        given[step.stage] = {n: v for n, v in parameters.items() if n in declared[step.stage]}
+        mine = {**of_stages.get(step.stage, {}), **parameters}
+        given[step.stage] = {n: v for n, v in mine.items() if n in declared[step.stage] - RESERVED}
         check_notebook(step.path, {"case_dir": "", "store_dir": "", **given[step.stage]})
     return given
 
