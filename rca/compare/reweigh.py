@@ -19,7 +19,7 @@ from rca.evidence.item import Basis, EvidenceItem, Group, Node
 from rca.verdict.knowledge import Knowledge, shipped_knowledge
 from rca.verdict.network import states_of
 from rca.verdict.side import side_of
-from rca.verdict.weigh import marginal, posterior
+from rca.verdict.weigh import marginal, posterior, reported
 
 
 def reweighed(gathered: Gathered) -> Gathered:
@@ -42,7 +42,7 @@ def _again(one: Incident, knowledge: Knowledge) -> Incident:
     path = Path(one.source)
     plain, _, _ = load(Found(path, bundle=path.suffix == ".zip"))
     items = items_of(plain["evidence"])
-    found = posterior(knowledge, items)
+    found = reported(knowledge, items)
     prior = posterior(knowledge, [])
     mechanisms = {name: float(found.mechanisms[name][0]) for name in MECHANISMS}
     sided = {*SUCTION_MECHANISMS, *DISCHARGE_MECHANISMS}

@@ -69,6 +69,7 @@ class Knowledge:
     failure: Number
     reliability: Mapping[str, float]
     tests: tuple[PossibleTest, ...]
+    doubt: float  # chance that the network itself is wrong, so that its evidence says nothing
 
     @property
     def identity(self) -> str:
@@ -114,6 +115,7 @@ def parse_knowledge(text: str) -> Knowledge:
         failure=reader.number("failure", plain["failure"], "anyway"),
         reliability=dict(plain["reliability"]),
         tests=tests,
+        doubt=reader.number("doubt", plain["doubt"], "network").best,
     )
 
 

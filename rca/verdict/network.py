@@ -5,14 +5,14 @@ from dataclasses import dataclass, field
 
 import numpy as np
 import numpy.typing as npt
-from scipy.stats import norm
+from scipy.special import ndtri
 
 from rca.evidence.item import EvidenceItem
 from rca.verdict.inference import Factor
 from rca.verdict.knowledge import INLET, INLET_STATES, Knowledge, Number, Variable
 
 FloatArray = npt.NDArray[np.float64]
-Likelihoods = dict[str, FloatArray]  # item key -> (B, states)
+POINT_95 = float(ndtri(0.95))  # low and high are read as the 5 and 95 % points
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,8 +33,7 @@ class Numbers:
         centre = np.log(number.best / (1 - number.best))
         low = centre - np.log(number.low / (1 - number.low))
         high = np.log(number.high / (1 - number.high)) - centre
-        # low and high are read as the 5 and 95 % points
-        width = np.where(draw < 0, low, high) / norm.ppf(0.95)
+        width = np.where(draw < 0, low, high) / POINT_95
         return np.asarray(1.0 / (1.0 + np.exp(-(centre + draw * width))))
 
 
@@ -81,7 +80,7 @@ def evidence_factors(
         for item in group:
             by_node.setdefault(item.node.value, []).append(item)
         for node, same in by_node.items():
-            likelihood = _likelihood(knowledge, node, same, weights)
+            likelihood = _likelihood(node, same, weights)
             factors.append(_observed(knowledge.variables[node], likelihood, sound, numbers))
     return factors
 
@@ -92,21 +91,22 @@ def states_of(name: str) -> tuple[str, ...]:
 
 
 def _likelihood(
-    knowledge: Knowledge,
     node: str,
     items: Sequence[EvidenceItem],
     weights: Mapping[str, FloatArray] | None,
 ) -> FloatArray:
     """P(readings | state), (B, states); several items of one node and cause: the strongest."""
-    del knowledge
     rows = []
     for item in items:
         row = np.array([[item.likelihood[s] for s in states_of(node)]])
         row = row / row.max()
         w = weights.get(item.key) if weights is not None else None
         rows.append(row if w is None else row ** w[:, None])
-    strongest = max(rows, key=lambda r: float(np.max(-np.log(r))))
-    return np.asarray(strongest)
+    if len(rows) == 1:
+        return np.asarray(rows[0])
+    stacked = np.stack(np.broadcast_arrays(*rows))  # (items, B, states)
+    strongest = np.argmax(np.max(-np.log(stacked), axis=2), axis=0)
+    return np.asarray(stacked[strongest, np.arange(stacked.shape[1])])
 
 
 def _observed(variable: Variable, likelihood: FloatArray, sound: str, numbers: Numbers) -> Factor:
