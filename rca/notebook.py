@@ -55,12 +55,14 @@ from rca.figures.panels_case import panels_intake
 from rca.figures.panels_damage import panels_damage
 from rca.figures.panels_discharge import panels_discharge
 from rca.figures.panels_oil import panels_oil
+from rca.figures.panels_overview import panels_overview
 from rca.figures.panels_records import FileRow, panels_records
 from rca.figures.panels_suction import panels_suction
 from rca.figures.panels_verdict import panels_verdict
 from rca.figures.records import figures_records
 from rca.figures.style import svg_bytes
 from rca.figures.suction import figures_suction
+from rca.figures.timeline import Coverage
 from rca.figures.verdict import figures_verdict
 from rca.intake.oil_reports import OilReading, read_oil_reports
 from rca.intake.read import read_case
@@ -109,6 +111,7 @@ __all__ = [
     "panels_discharge",
     "panels_intake",
     "panels_oil",
+    "panels_overview",
     "panels_records",
     "panels_suction",
     "panels_verdict",
@@ -223,6 +226,13 @@ class Investigation:
                 bad_cells=sum(f.bad_cells.values()),
                 offset_s=f.offset_s,
             )
+            for f in reading.files
+        )
+
+    def coverage(self, reading: RecordReading) -> tuple[Coverage, ...]:
+        """The times the records cover, with their gaps, for the sequence of events."""
+        return tuple(
+            Coverage(start_s=f.start_s, end_s=f.end_s, gaps=f.gaps, fast=f.fast)
             for f in reading.files
         )
 

@@ -15,6 +15,7 @@ from matplotlib.patches import Polygon, Rectangle
 
 from rca.case.model import Case, SuctionPart
 from rca.case.vocabulary import PartKind
+from rca.figures.numbers import written
 from rca.figures.style import DISCHARGE, GREY, INK, PALE, SUCTION, limit_line, new_figure
 from rca.suction.check import InletState, SuctionCheck
 
@@ -72,7 +73,7 @@ def _label(part: SuctionPart) -> str:
     """What stands beside the symbol: the part, its size, how many."""
     name = part.label or part.form or part.part.value
     many = f"{part.count} \u00d7 " if part.count > 1 else ""
-    sizes = [r.text for r in (part.bore, part.length) if r is not None]
+    sizes = [written(r.text) for r in (part.bore, part.length) if r is not None]
     if part.rated_loss is not None and part.rated_flow is not None:
         sizes.append(f"{part.rated_loss.text} at {part.rated_flow.text}")
     head = textwrap.fill(f"{many}{name}", 15)
@@ -212,7 +213,7 @@ def _draw_pump(ax: Axes, case: Case, x: float) -> None:
     ax.plot([x, x + 0.62], [LINE_Y, LINE_Y], color=DISCHARGE, linewidth=2.2, zorder=2)
     pump = case.pump
     words = [pump.kind.value + " pump" if pump.kind else "pump"]
-    words += [r.text for r in (pump.displacement, pump.speed) if r is not None]
+    words += [written(r.text) for r in (pump.displacement, pump.speed) if r is not None]
     ax.text(x, 0.62, "\n".join(words), ha="center", va="bottom", fontsize=SMALL, linespacing=1.1)
 
 

@@ -44,3 +44,20 @@ def moment(seconds: float) -> str:
 def day(seconds: float) -> str:
     """A day in UTC."""
     return datetime.fromtimestamp(seconds, tz=UTC).strftime("%Y-%m-%d")
+
+
+_PLAIN = (
+    ("degC", "\u00b0C"),
+    ("mm2/s", "mm\u00b2/s"),
+    ("m2/s", "m\u00b2/s"),
+    ("cm3", "cm\u00b3"),
+    ("kg/m3", "kg/m\u00b3"),
+    ("+/-", "\u00b1"),
+)
+
+
+def written(text: str) -> str:
+    """A quantity as a reader expects it: units with their signs; the value untouched."""
+    for plain, shown in _PLAIN:
+        text = text.replace(plain, shown)
+    return text
