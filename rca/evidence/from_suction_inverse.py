@@ -7,8 +7,9 @@ from rca.suction.check import SuctionCheck
 from rca.suction.explanations import Explanation, Explanations, Share
 from rca.suction.inverse import Inverse, Track
 
-MISREAD = 0.05  # share of such estimates that are wrong in a way their intervals do not show;
-# judgement
+# share of such estimates that are wrong in a way their intervals do not show: a thermometer far from
+# the strainer, a loss between the two laws; judgement
+MISREAD = 0.10
 MOST = 200.0  # largest odds one record may give before MISREAD is mixed in
 LEVEL_SEEN = 0.03e5  # [Pa], about a third of a metre of oil
 NODES = {
