@@ -1,5 +1,7 @@
 """Evidence from the suction side: measured and computed inlet pressure, released air."""
 
+from dataclasses import replace
+
 import numpy as np
 from scipy.stats import norm
 
@@ -70,6 +72,10 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     error = transducer_error(check)
     if error is not None:
         median, u = median + error.p50, max(error.sd, 0.01e5)
+        regime = replace(
+            regime,
+            below_limit=regime.below_limit if regime.p05 + error.p50 < check.limit else 0.0,
+        )
         words += (
             f" At rest the transducer reads {abs(error.p50) / 1e5:.2f} bar too "
             f"{'low' if error.p50 > 0 else 'high'}; corrected {median / 1e5:.2f} bar(a)."
@@ -79,7 +85,9 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
             key="inlet.measured",
             node=Node.INLET_PRESSURE,
             likelihood=_with_starts(
-                _states(median, u, check.limit, trust=1 - MISREAD), regime, measured.cold
+                _states(median, u, check.limit, trust=1 - MISREAD),
+                regime,
+                measured.cold if error is None else None,
             ),
             statement=words,
             sources=_source(aligned),

@@ -8,7 +8,7 @@ from scipy.stats import multivariate_normal
 
 FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
-SWEEPS = 25
+BURN_IN, KEPT = 15, 10  # sweeps before draws are kept, and draws kept of each chain
 
 
 def bounded_mixture(
@@ -49,7 +49,7 @@ def bounded_mixture(
 
 def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator) -> float:
     """Probability that no coordinate is negative."""
-    if not mean.size:
+    if not mean.size or (mean > 5.0 * np.sqrt(np.diag(covariance))).all():
         return 1.0
     return float(
         multivariate_normal.cdf(
@@ -57,7 +57,7 @@ def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator)
             mean=-mean,
             cov=covariance,
             allow_singular=True,
-            maxpts=2000 * mean.size,
+            maxpts=500 * mean.size,
             rng=rng,
         )
     )
@@ -69,19 +69,23 @@ def _bounded(
     values, vectors = np.linalg.eigh(covariance)
     root = vectors * np.sqrt(np.maximum(values, 1e-14 * values[-1]))  # columns: principal axes
     start = _most_probable(mean, root, bounded)
-    z = np.repeat(start[None, :], number, axis=0)
+    z = np.repeat(start[None, :], -(-number // KEPT), axis=0)
     rows, base = root[bounded], mean[bounded]
-    room = base + z @ rows.T  # value of each bounded coordinate, (number, bounds)
-    for _ in range(SWEEPS):
+    room = base + z @ rows.T  # value of each bounded coordinate, (chains, bounds)
+    kept = []
+    for sweep in range(BURN_IN + KEPT):
         for axis in range(mean.size):
             slope = rows[:, axis]
-            rest = room - np.outer(z[:, axis], slope)
-            with np.errstate(divide="ignore", invalid="ignore"):
-                edge = -rest / slope
-            low = np.where(slope > 0, edge, -np.inf).max(axis=1, initial=-np.inf)
-            high = np.where(slope < 0, edge, np.inf).min(axis=1, initial=np.inf)
+            rest = room - z[:, axis, None] * slope
+            edge = -rest / np.where(slope == 0.0, np.nan, slope)
+            up = slope > 0.0
+            low = edge[:, up].max(axis=1, initial=-np.inf)
+            high = edge[:, slope < 0.0].min(axis=1, initial=np.inf)
             z[:, axis] = _between(low, np.maximum(low, high), rng)
-            room = rest + np.outer(z[:, axis], slope)
+            room = rest + z[:, axis, None] * slope
+        if sweep >= BURN_IN:
+            kept.append(z.copy())
+    z = np.concatenate(kept)[:number]
     point = mean + root @ start
     scale = np.sqrt(np.diag(covariance))
     on_bound = bounded & (point < 1e-3 * scale) & (mean < 0.0)
@@ -94,7 +98,7 @@ def _most_probable(mean: FloatArray, root: FloatArray, bounded: Mask) -> FloatAr
         return np.zeros(mean.size)
     inverse = np.linalg.inv(root)
     lower = np.where(bounded, 0.0, -np.inf)
-    found = lsq_linear(inverse, inverse @ mean, bounds=(lower, np.inf))
+    found = lsq_linear(inverse, inverse @ mean, bounds=(lower, np.inf), method="bvls")
     return np.asarray(inverse @ (np.maximum(found.x, lower) - mean))
 
 

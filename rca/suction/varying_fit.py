@@ -78,7 +78,8 @@ def fit_varying(
     for _ in range(ROUNDS):
         residual = y - hats.predict(solution.mean, x)
         noise = max(_robust_sd(residual), 1e-6 * max(float(np.ptp(y)), 1.0))
-        kept = np.abs(residual) <= CLIP * noise
+        # about the median, as gross errors can pull the first fit off every good row
+        kept = np.abs(residual - np.median(residual)) <= CLIP * noise
         inflation = _inflation(residual[kept])
         solution = _Solution(hats, y, x, kept, freest, noise, inflation)
     solution = _Solution(hats, y, x, kept, priors, noise, inflation)

@@ -57,7 +57,6 @@ SCENARIOS = (
 EXPECTED = {
     "clean line": "normal vacuum",
     "air leak": "normal vacuum",
-    "cold oil": "normal vacuum",
 }
 
 
