@@ -8,7 +8,7 @@ from scipy.stats import multivariate_normal
 
 FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
-BURN_IN, KEPT = 15, 10  # sweeps before draws are kept, and draws kept of each chain
+BURN_IN, KEPT = 8, 10  # sweeps before draws are kept, and draws kept of each chain
 
 
 def bounded_mixture(

@@ -18,7 +18,7 @@ from scipy.linalg.lapack import dpotrf, dpotrs
 FloatArray = npt.NDArray[np.float64]
 CLIP = 5.0  # robust standard deviations beyond which a row is set aside
 ROUNDS = 3
-LEAST_WEIGHT = 0.004  # combinations below it are dropped
+LEAST_WEIGHT = 0.01  # combinations below it are dropped
 LEAST_BLOCKS = 16  # fewer blocks do not give a variance worth having
 
 
