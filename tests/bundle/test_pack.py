@@ -55,8 +55,8 @@ def test_the_bag_is_valid_and_complete(bag: Path) -> None:
 
         opened = bagit.Bag(str(bag))
         opened.validate(completeness_only=False)
-    assert opened.version == "1.0"
-    assert set(opened.algorithms) == {"sha256", "sha512"}
+        assert opened.version == "1.0"
+        assert set(opened.algorithms) == {"sha256", "sha512"}
     assert check_bag(bag) == ()
 
 
