@@ -98,10 +98,16 @@ def class_values(name: str) -> ClassValues:
 def density(temperature: float, density_15: float, expansion: float) -> float:
     """Density [kg/m3] at a temperature [K]: rho15 / (1 + beta (T - 288.15 K)).
 
-    Linear expansion; within 0.5 % from 250 K to 400 K for mineral oil. Source: definition of the
-    coefficient of cubic expansion.
-    Raises OutOfRangeError outside 200 K to 500 K.
+    ``density_15`` [kg/m3] 600-1500, ``expansion`` beta [1/K] 2e-4 to 1.5e-3. Linear expansion;
+    within 0.5 % from 250 K to 400 K for mineral oil. Pressure: see ``bulk_modulus``.
+    Source: definition of the coefficient of cubic expansion.
+    Raises OutOfRangeError outside 200 K to 500 K or the ranges above, or for NaN.
     """
     if not 200.0 <= temperature <= 500.0:
         raise OutOfRangeError(f"density is used from 200 K to 500 K; got {temperature:g} K")
+    if not (600.0 <= density_15 <= 1500.0 and 2e-4 <= expansion <= 1.5e-3):
+        raise OutOfRangeError(
+            "density needs 600-1500 kg/m3 at 15 degC and an expansion of 2e-4 to 1.5e-3 1/K; got "
+            f"{density_15!r}, {expansion!r}"
+        )
     return density_15 / (1.0 + expansion * (temperature - 288.15))
