@@ -7,6 +7,7 @@ from rca.base.errors import OutOfRangeError
 
 FloatArray = npt.NDArray[np.float64]
 LAMINAR_LIMIT = 2100.0  # Reynolds number; transition 2100 to 4000 is taken from Churchill
+TURBULENT_LIMIT = 4000.0  # Reynolds number
 HAGENBACH = 1.25  # extra loss of a developing laminar flow, in velocity heads; 1.2-1.3, White,
 # Viscous Fluid Flow, 3rd ed., sec. 3-3 (from memory)
 
@@ -58,7 +59,12 @@ def darcy_friction(re: float | FloatArray, relative_roughness: float) -> FloatAr
 
 
 def pipe_loss(
-    flow: FloatArray, bore: float, length: float, roughness: float, nu: FloatArray, rho: float
+    flow: FloatArray,
+    bore: float,
+    length: float,
+    roughness: float,
+    nu: FloatArray,
+    rho: float | FloatArray,
 ) -> FloatArray:
     """Friction loss of a straight pipe [Pa]: f (L/D) rho V^2/2; Darcy and Weisbach."""
     velocity = np.abs(flow) / (np.pi / 4.0 * bore**2)
@@ -69,17 +75,19 @@ def pipe_loss(
 
 
 def entry_loss(
-    flow: FloatArray, bore: float, length: float, nu: FloatArray, rho: float
+    flow: FloatArray, bore: float, length: float, nu: FloatArray, rho: float | FloatArray
 ) -> FloatArray:
-    """Extra loss of a flow that develops along the pipe [Pa]; laminar flow only.
+    """Extra loss of a flow that develops along the pipe [Pa]; laminar flow.
 
     1.25 velocity heads over the entrance length 0.06 Re D, less in proportion where the pipe is
-    shorter. An estimate within about 20 %.
+    shorter; fades out between Re 2100 and 4000, as a turbulent flow develops within a few bores.
+    An estimate within about 20 %.
     """
     velocity = np.abs(flow) / (np.pi / 4.0 * bore**2)
     re = np.maximum(reynolds(flow, bore, nu), 1e-9)
     share = np.minimum(1.0, length / (0.06 * re * bore))
-    return np.asarray(np.where(re < LAMINAR_LIMIT, HAGENBACH * share * 0.5 * rho * velocity**2, 0))
+    laminar = np.clip((TURBULENT_LIMIT - re) / (TURBULENT_LIMIT - LAMINAR_LIMIT), 0.0, 1.0)
+    return np.asarray(HAGENBACH * share * laminar * 0.5 * rho * velocity**2)
 
 
 def fitting_coefficient(form: str, re: FloatArray, bore: float) -> FloatArray:

@@ -73,6 +73,12 @@ def oil_density(case: Case, temperature: float) -> float:
     return density(temperature, rho_15, values.expansion)
 
 
+def oil_densities(case: Case, temperature: FloatArray) -> FloatArray:
+    """Density [kg/m3] at many temperatures [K], by the same relation as ``oil_density``."""
+    expansion = class_values(fluid_class_name(case)).expansion
+    return np.asarray(oil_density(case, 288.15) / (1.0 + expansion * (temperature - 288.15)))
+
+
 def pump_flow(case: Case, speed: float | FloatArray | None = None) -> FloatArray | None:
     """Flow the pump draws [m3/s] at a speed [1/s], by default its own; None where unknown.
 
@@ -127,10 +133,10 @@ def pressure_budget(
     if viscosities is None:
         raise ValueError("the case gives neither viscosities nor a grade")
     nu = kinematic_viscosity(np.asarray(t), *viscosities) * viscosity_factor
-    rho = oil_density(case, float(np.mean(t)))
+    rho = oil_densities(case, t)
     p_air = local_atmosphere(case) if atmosphere is None else atmosphere
     level = case.reservoir.level_above_inlet
-    head = rho * GRAVITY * ((level.value if level else 0.0) + state.level_change) * np.ones_like(q)
+    head = rho * GRAVITY * ((level.value if level else 0.0) + state.level_change)
     breather = _breather(case, q, state)
     parts = tuple(
         (part_name(part), _part_loss(part, q, nu, rho, state) * loss_factor)
@@ -166,7 +172,7 @@ def _breather(case: Case, q: FloatArray, state: Condition) -> FloatArray:
     )
 
 
-def _kinetic(case: Case, q: FloatArray, rho: float) -> FloatArray:
+def _kinetic(case: Case, q: FloatArray, rho: FloatArray) -> FloatArray:
     """Pressure turned into speed at the pump's inlet bore, taken as the last bore of the line."""
     bores = [part.bore.value for part in case.suction_line if part.bore is not None]
     if not bores:
@@ -176,7 +182,7 @@ def _kinetic(case: Case, q: FloatArray, rho: float) -> FloatArray:
 
 
 def _part_loss(
-    part: SuctionPart, q: FloatArray, nu: FloatArray, rho: float, state: Condition
+    part: SuctionPart, q: FloatArray, nu: FloatArray, rho: FloatArray, state: Condition
 ) -> FloatArray:
     if part.part is PartKind.STRAINER:
         if part.rated_flow is None or part.rated_loss is None or part.rated_viscosity is None:

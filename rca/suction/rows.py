@@ -8,14 +8,12 @@ import numpy.typing as npt
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.case.site import local_atmosphere
-from rca.physics.fluid_class import class_values
 from rca.physics.viscosity import kinematic_viscosity
 from rca.records.running import running_bins, standing_bins
 from rca.suction.budget import (
     GRAVITY,
-    fluid_class_name,
     fluid_viscosities,
-    oil_density,
+    oil_densities,
     pump_flow,
 )
 
@@ -23,6 +21,7 @@ FloatArray = npt.NDArray[np.float64]
 Mask = npt.NDArray[np.bool_]
 STARVED = 0.25e5  # [Pa]; below it the pump no longer draws its displacement, so the flow of such
 # a row is not known; common practice, no source
+UNSTEADY = 0.25  # spread of speed or flow within a bin over its mean
 COLD_SHARE = 0.001  # of the running bins
 COLDEST, HOTTEST = 203.0, 573.0  # [K], range of the viscosity relation
 
@@ -35,6 +34,7 @@ class SetAside:
     temperature: int = 0  # outside the viscosity relation
     reversed: int = 0  # negative speed or flow
     starved: int = 0  # inlet below STARVED
+    unsteady: int = 0  # speed or flow changed within the bin: its means do not belong together
     outliers: int = 0  # beyond five robust standard deviations of the fit
 
 
@@ -96,13 +96,14 @@ def suction_rows(case: Case, aligned: AlignedRecord) -> Rows | str:
     backward = _backward(aligned, flow)
     forward = valid & ~backward & (np.nan_to_num(flow) > 0.0)
     fed = forward & (np.nan_to_num(p) >= STARVED)
-    running = turning & fed
+    steady = _steady(aligned, turning & fed)
+    running = turning & fed & steady
     resting = standing_bins(aligned) & valid & ~turning
     keep = running | resting
     still, level_known, headspace_known = _still(case, aligned, t)
     nu, rho = np.ones_like(p), np.full_like(p, np.nan)
     nu[keep] = kinematic_viscosity(t[keep], *viscosities)
-    rho[keep] = _density(case, t[keep])
+    rho[keep] = oil_densities(case, t[keep])
     rows = Rows(
         time=aligned.time_s,
         pressure=p,
@@ -127,6 +128,7 @@ def suction_rows(case: Case, aligned: AlignedRecord) -> Rows | str:
             temperature=int((turning & known & ~valid).sum()),
             reversed=int((valid & backward).sum()),
             starved=int((turning & forward & ~fed).sum()),
+            unsteady=int((turning & fed & ~steady).sum()),
         ),
     )
 
@@ -137,6 +139,18 @@ def recorded_flow(case: Case, aligned: AlignedRecord) -> FloatArray | None:
     if flow is not None:
         return flow.mean
     return pump_flow(case, speed.mean) if speed is not None else None
+
+
+def _steady(aligned: AlignedRecord, running: Mask) -> Mask:
+    """Bins in which speed and flow hold within UNSTEADY; all, where most bins do not."""
+    steady = np.ones(aligned.time_s.shape, dtype=bool)
+    for quantity in ("shaft speed", "flow"):
+        found = aligned.get(quantity)
+        if found is not None:
+            spread = np.nan_to_num(found.high - found.low)
+            steady &= spread <= UNSTEADY * np.abs(np.nan_to_num(found.mean))
+    enough = int((steady & running).sum()) > 0.3 * int(running.sum())
+    return steady if enough else np.ones_like(steady)
 
 
 def _headspace_drop(case: Case, aligned: AlignedRecord, running: Mask) -> float | None:
@@ -159,12 +173,6 @@ def _backward(aligned: AlignedRecord, flow: FloatArray) -> Mask:
     return np.asarray(backward)
 
 
-def _density(case: Case, temperature: FloatArray) -> FloatArray:
-    """Density at each temperature, linear in the specific volume as ``oil_density``."""
-    expansion = class_values(fluid_class_name(case)).expansion
-    return np.asarray(oil_density(case, 288.15) / (1.0 + expansion * (temperature - 288.15)))
-
-
 def _still(
     case: Case, aligned: AlignedRecord, temperature: FloatArray
 ) -> tuple[FloatArray, bool, bool]:
@@ -185,5 +193,5 @@ def _still(
         early = float(np.median(seen[: max(1, seen.size // 20)]))
         level = level + np.where(np.isfinite(sensor.mean), sensor.mean - early, 0.0)
     known = np.where(np.isfinite(temperature), temperature, 313.15)
-    rho = _density(case, known)
+    rho = oil_densities(case, known)
     return base + rho * GRAVITY * level, sensor is not None, headspace is not None
