@@ -88,6 +88,7 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
                 _states(median, u, check.limit, trust=1 - MISREAD),
                 regime,
                 measured.cold if error is None else None,
+                measured.warm.hours if measured.warm is not None else regime.hours,
             ),
             statement=words,
             sources=_source(aligned),
@@ -102,22 +103,24 @@ def _measured(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
 
 
 def _with_starts(
-    likelihood: dict[str, float], warm: Regime, cold: Regime | None
+    likelihood: dict[str, float], warm: Regime, cold: Regime | None, warm_hours: float
 ) -> dict[str, float]:
     """Times below the limit count towards "low" and "near vapour", though the median holds.
 
     Of cold starts by the hours they add up to: an hour near vapour, or ten below the limit, make
-    that state about half as probable a description as the warm one. Of warm running by its share:
-    a tenth of the time does the same. Judgement.
+    that state about half as probable a description as the warm one; so do three hundredths of all
+    running, since a record of a few days stands for the starts of months. Of warm running by its
+    share: a tenth of the time does the same. Judgement.
     """
     low, near = likelihood["low"], likelihood["near vapour"]
     low = max(low, 0.9 * warm.below_limit / (warm.below_limit + 0.1))
     near = max(near, 0.9 * warm.near_vapour / (warm.near_vapour + 0.03))
     if cold is not None:
+        running = warm_hours + cold.hours
         hours = cold.hours * cold.below_limit
-        low = max(low, 0.9 * hours / (hours + 10.0))
+        low = max(low, 0.9 * hours / (hours + min(10.0, 0.03 * running)))
         hours = cold.hours * cold.near_vapour
-        near = max(near, 0.9 * hours / (hours + 1.0))
+        near = max(near, 0.9 * hours / (hours + min(1.0, 0.01 * running)))
     return likelihood | {"low": low, "near vapour": near}
 
 
@@ -311,7 +314,7 @@ def _thin_air(
     return EvidenceItem(
         key="inlet.air",
         node=Node.THIN_AIR,
-        likelihood={"no": 0.97 - 0.9 * decides, "yes": 0.05 + 0.9 * decides},
+        likelihood={"no": 0.98 - 0.96 * decides, "yes": 0.05 + 0.93 * decides},
         statement=(
             f"The air at the site is {check.atmosphere / 1e5:.2f} bar(a), "
             f"{missing_air / 1e5:.2f} bar under sea level; warm inlet {mean / 1e5:.2f} bar(a), "

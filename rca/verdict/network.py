@@ -170,17 +170,16 @@ def _cpt(variable: Variable, numbers: Numbers) -> Factor:
 
 
 def _failed(knowledge: Knowledge, numbers: Numbers) -> Factor:
-    """P(the pump failed | mechanisms): noisy-OR over those that can fail it."""
-    mechanisms = knowledge.names("mechanism")
+    """P(the pump failed | what can fail it): noisy-OR over those that can."""
+    able = [n for n, v in knowledge.variables.items() if v.explains_failure is not None]
     table = (1.0 - numbers.of("failure", "anyway", knowledge.failure)).reshape(
-        (-1, *(1 for _ in mechanisms))
+        (-1, *(1 for _ in able))
     )
-    for axis, name in enumerate(mechanisms):
+    for axis, name in enumerate(able):
         number = knowledge.variables[name].explains_failure
-        if number is None:
-            continue
+        assert number is not None
         p = numbers.of(name, "explains", number)
-        shape = [p.size] + [1] * len(mechanisms)
+        shape = [p.size] + [1] * len(able)
         shape[axis + 1] = 2
         table = table * np.stack([np.ones_like(p), 1.0 - p], axis=1).reshape(shape)
-    return Factor(mechanisms, 1.0 - table)
+    return Factor(tuple(able), 1.0 - table)
