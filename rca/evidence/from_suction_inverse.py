@@ -10,6 +10,7 @@ from rca.suction.inverse import Inverse, Track
 # share of such estimates that are wrong in a way their intervals do not show: a thermometer far from
 # the strainer, a loss between the two laws; judgement
 MISREAD = 0.10
+MOST_UNSEEN = 3.0  # the same for a level nobody recorded; judgement
 MOST = 200.0  # largest odds one record may give before MISREAD is mixed in
 LEVEL_SEEN = 0.03e5  # [Pa], about a third of a metre of oil
 NODES = {
@@ -56,11 +57,11 @@ def from_inverse(check: SuctionCheck, aligned: AlignedRecord | None) -> Items:
     return items
 
 
-def weighed(after: float, before: float) -> dict[str, float]:
+def weighed(after: float, before: float, most: float = MOST) -> dict[str, float]:
     """P(finding | no), P(finding | yes) from the probability before and after the record."""
     low, high = 1e-4, 1.0 - 1e-4
     p, q = min(max(after, low), high), min(max(before, low), high)
-    ratio = min(max(p / (1 - p) * (1 - q) / q, 1.0 / MOST), MOST)
+    ratio = min(max(p / (1 - p) * (1 - q) / q, 1.0 / most), most)
     yes = ratio / (1.0 + ratio)
     return {
         "no": (1 - MISREAD) * (1.0 - yes) + 0.5 * MISREAD,
@@ -134,7 +135,7 @@ def _level(share: Share, inverse: Inverse, sources: tuple[Source, ...]) -> Evide
         likelihood = {"no": 0.9 - 0.85 * seen, "yes": 0.25 + 0.65 * seen}
         words = f"The recorded level takes {abs(max(sunk, 0.0)) / 1e5:.3f} bar from the inlet."
     else:
-        likelihood = weighed(share.raised, share.raised_before)
+        likelihood = weighed(share.raised, share.raised_before, MOST_UNSEEN)
         words = (
             f"Without a level record, a sunken level could take up to "
             f"{max(share.amount.p95, 0.0) / 1e5:.3f} bar of what the inlet lacks."
