@@ -13,8 +13,11 @@ from rca.records.running import running_bins, standing_bins
 
 Mask = npt.NDArray[np.bool_]
 STUCK_HOURS = 24.0  # a running channel this long on one value is stuck; common practice
+COARSE_STUCK_HOURS = 168.0  # the same of a channel that knows few values at all; judgement
+COARSE_VALUES = 100  # distinct values; a thermometer in whole degrees rests on one for a shift
 COLD_BELOW = 12.0  # [K] below normal temperature
 LONGEST_LIST = 200
+LEAST_DELIVERY = 20  # bins at either end of the record for a comparison of the delivery
 ABSOLUTE = (
     "inlet pressure",
     "discharge pressure",
@@ -64,6 +67,15 @@ class Duty:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Delivery:
+    """Recorded flow over displacement times speed, at the record's two ends [-]."""
+
+    first: float
+    last: float
+    spread: float  # robust standard deviation of the bins about their own end
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class RecordCheck:
     """The records of a case, judged."""
 
@@ -77,6 +89,7 @@ class RecordCheck:
     duty: Duty | None
     bursts: tuple[BurstFinding, ...]
     quantities: tuple[str, ...]
+    delivery: Delivery | None = None
 
 
 def check_records(
@@ -118,6 +131,7 @@ def check_records(
         duty=_duty(aligned, running, cold),
         bursts=bursts,
         quantities=tuple(sorted(aligned.series)),
+        delivery=_delivery(case, aligned, running),
     )
 
 
@@ -205,7 +219,9 @@ def _remarks(
         found += _below_zero(values, series)
     stuck = _longest_same(series.mean, running) * aligned.bin_s / 3600.0
     if stuck > STUCK_HOURS and quantity not in MAY_STAND_STILL:
-        found.append((f"stays on one value for {stuck:.0f} running hours: stuck", True))
+        coarse = np.unique(values).size <= COARSE_VALUES and stuck <= COARSE_STUCK_HOURS
+        word = "coarse, or stuck" if coarse else "stuck"
+        found.append((f"stays on one value for {stuck:.0f} running hours: {word}", not coarse))
     if quantity == "inlet pressure":
         rest = standing_bins(aligned) & np.isfinite(series.mean)
         level = case.reservoir.level_above_inlet
@@ -251,13 +267,16 @@ def _without_spikes(series: Series) -> Series:
 
 
 def _longest_same(values: FloatArray, running: Mask) -> int:
-    """Longest run of equal neighbouring samples while running, in bins."""
-    seen = values[running & np.isfinite(values)]
-    if seen.size < 2:
+    """Most running bins within one stretch of equal neighbouring samples.
+
+    A stretch ends where the value moves, the pump running or not: a sensor that follows the
+    cooling of a standing machine is alive.
+    """
+    seen = np.isfinite(values)
+    if seen.sum() < 2:
         return 0
-    breaks = np.flatnonzero(np.diff(seen) != 0)
-    edges = np.concatenate([[-1], breaks, [seen.size - 1]])
-    return int(np.max(np.diff(edges)))
+    stretch = np.cumsum(np.concatenate([[0], np.diff(values[seen]) != 0]))
+    return int(np.bincount(stretch, weights=running[seen].astype(float)).max())
 
 
 def _duty(aligned: AlignedRecord, running: Mask, cold: Mask | None) -> Duty:
@@ -283,6 +302,22 @@ def _seen_standing_or_running(aligned: AlignedRecord, known: Mask) -> Mask:
         if series is not None:
             return np.asarray(np.isfinite(series.mean))
     return known
+
+
+def _delivery(case: Case, aligned: AlignedRecord, running: Mask) -> Delivery | None:
+    """A pump set back by its control delivers less as well: see the remark of the item."""
+    flow, speed, size = aligned.get("flow"), aligned.get("shaft speed"), case.pump.displacement
+    if flow is None or speed is None or size is None:
+        return None
+    good = running & np.isfinite(flow.mean) & np.isfinite(speed.mean)
+    ratio = flow.mean[good] / (size.value * speed.mean[good])
+    part = ratio.size // 10
+    if part < LEAST_DELIVERY:
+        return None
+    ends = ratio[:part], ratio[-part:]
+    middles = [float(np.median(end)) for end in ends]
+    away = np.concatenate([np.abs(e - m) for e, m in zip(ends, middles, strict=True)])
+    return Delivery(first=middles[0], last=middles[1], spread=1.4826 * float(np.median(away)))
 
 
 def _p95(aligned: AlignedRecord, quantity: str, running: Mask) -> float | None:

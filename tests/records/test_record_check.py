@@ -1,5 +1,7 @@
 """What the records show, on records whose truth is known because they were made that way."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -7,6 +9,8 @@ from rca.base.errors import OutOfRangeError
 from rca.base.source import Source
 from rca.case.model import Case
 from rca.case.series import AlignedRecord, FloatArray, Series
+from rca.evidence.from_records import from_records
+from rca.evidence.item import EvidenceItem, NotAssessed
 from rca.records.bursts import burst_finding, fastest_rise
 from rca.records.check import RecordCheck, check_records, usable
 
@@ -125,3 +129,40 @@ def test_a_burst_too_short_is_refused() -> None:
     """No statistics of a handful of samples."""
     with pytest.raises(OutOfRangeError, match="64"):
         burst_finding("vibration", np.zeros(10), 1e4, SOURCE, speed=None, elements=None)
+
+
+def test_a_coarse_thermometer_that_cools_overnight_is_alive(small_case: Case) -> None:
+    """Whole degrees: 16 h on one value while running, another value at rest."""
+    hours = np.arange(SIZE)  # bins of an hour
+    running = hours % 24 < 16
+    values = {
+        "shaft_speed": np.where(running, TURNS, 0.0),
+        "oil_temperature": np.where(running, 323.15, 298.15),
+    }
+    aligned = replace(record(**values), bin_s=3600.0)
+    assert usable(small_case, aligned).get("oil temperature") is not None
+    dead = replace(record(**values | {"oil_temperature": np.full(SIZE, 323.15)}), bin_s=3600.0)
+    assert usable(small_case, dead).get("oil temperature") is None
+
+
+def test_lost_delivery_is_seen_at_the_end_of_the_record(small_case: Case) -> None:
+    """A tenth of the flow lost over the record."""
+    size = small_case.pump.displacement
+    assert size is not None
+    full = size.value * TURNS
+    fading = full * np.linspace(0.95, 0.855, SIZE)
+    values = healthy() | {"flow": fading}
+    lost = judged(small_case, record(**values)).delivery
+    assert lost is not None
+    assert lost.last / lost.first == pytest.approx(0.9, abs=0.01)
+    steady = judged(small_case, record(**healthy() | {"flow": np.full(SIZE, 0.95 * full)}))
+    items = {i.key: i for i in from_records(small_case, steady, record(**values))}
+    worse = judged(small_case, record(**values))
+    found = {i.key: i for i in from_records(small_case, worse, record(**values))}
+    assert ratio(items["record.flow_loss"]) < 1 < ratio(found["record.flow_loss"])
+
+
+def ratio(one: EvidenceItem | NotAssessed) -> float:
+    """Likelihood ratio of an item."""
+    assert isinstance(one, EvidenceItem)
+    return one.likelihood["yes"] / one.likelihood["no"]
