@@ -311,6 +311,8 @@ def _shares(
         kind = _EXPLAINED_BY[name]
         track = tracks[name]
         known = track.identified_at_end and (name != "level" or inverse.level_known)
+        if name == "transducer":
+            known = known and inverse.level_stated
         shares.append(
             Share(
                 explanation=kind,
@@ -365,6 +367,8 @@ def _notes(case: Case, inverse: Inverse) -> dict[str, str]:
         if e.rest_rows
         else "The pump was never seen at rest: an offset can't be told from a depression."
     )
+    if not inverse.level_stated:
+        rest += " The level above the inlet is not stated, so an offset may be a level."
     level = (
         "The recorded level says how much."
         if inverse.level_known

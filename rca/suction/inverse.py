@@ -24,6 +24,7 @@ from rca.suction.clean_line import CleanLine, Excitation, clean_line
 from rca.suction.priors import NOTICED, priors_of
 from rca.suction.rows import Rows, SetAside, suction_rows
 from rca.suction.spread import Spread, spread
+from rca.suction.state import usable_temperature
 from rca.suction.varying_fit import Prior, VaryingFit, fit_varying
 
 FloatArray = npt.NDArray[np.float64]
@@ -84,6 +85,7 @@ class Inverse:
     # seen, of viscous, quadratic, depression; and of an offset that lowers the reading
     raised_before: tuple[float, float, float, float]
     level_known: bool
+    level_stated: bool
     headspace_known: bool
     headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
     contradicted: tuple[str, ...]  # unknowns the record asks to be negative
@@ -127,7 +129,7 @@ def estimate_resistances(
     knots = _knots(rows)
     excitation = _excitation(rows, x)
     clean = clean_line(case, flow, temperature, excitation)
-    priors = priors_of(clean)
+    priors = priors_of(clean, level_stated=rows.level_stated)
     fit = fit_varying(rows.time, y, x, knots, priors)
     rng = np.random.default_rng(seed)
     first, last, contradicted = _ends(fit, rng)
@@ -157,6 +159,7 @@ def estimate_resistances(
         clean=clean,
         raised_before=_raised_before(prior, clean),
         level_known=rows.level_known,
+        level_stated=rows.level_stated,
         headspace_known=rows.headspace_known,
         headspace_drop=rows.headspace_drop,
         contradicted=contradicted,
@@ -173,7 +176,7 @@ def reference_state(case: Case, rows: Rows) -> tuple[float, float]:
     return (
         flow if flow is not None else float(np.median(rows.flow[rows.running])),
         temperature.value
-        if temperature is not None
+        if temperature is not None and usable_temperature(temperature)
         else float(np.median(rows.temperature[rows.running])),
     )
 

@@ -16,7 +16,7 @@ from rca.suction.budget import (
     pump_flow,
 )
 from rca.suction.spread import Spread, spread
-from rca.suction.state import draws
+from rca.suction.state import draws, usable_temperature
 
 FloatArray = npt.NDArray[np.float64]
 STEPS = 8  # pieces a pipe is cut into
@@ -64,7 +64,7 @@ def air_along_path(
     flow, warm = pump_flow(case), case.fluid.temperature
     if flow is None or float(flow) <= 0.0 or warm is None or not case.suction_line:
         return None
-    if fluid_viscosities(case) is None:
+    if fluid_viscosities(case) is None or not usable_temperature(warm):
         return None
     budget = pressure_budget(case, float(flow), warm.value)
     losses = np.array([float(loss) for _, loss in budget.parts])

@@ -19,10 +19,11 @@ ANYWHERE = 0.25 * BAR  # a first value that is not as described
 FREE_WALK = 0.15 * BAR
 UNDESCRIBED = 0.3 * BAR  # losses of a line nobody described
 TRANSDUCER = 0.02 * BAR  # industrial transducer, with weather and level; common practice
+UNKNOWN_LEVEL = 0.06 * BAR  # the same where nobody states the level: some 0.7 m of oil either way
 STARTS_WRONG, WALKS = 0.25, 0.25  # how often; judgement
 
 
-def priors_of(clean: CleanLine | None) -> tuple[Prior, ...]:
+def priors_of(clean: CleanLine | None, *, level_stated: bool = True) -> tuple[Prior, ...]:
     """Courses of viscous loss, quadratic loss, depression and offset, in this order."""
     if clean is None:
         viscous = _courses(0.0, UNDESCRIBED, stays=0.01 * BAR)
@@ -33,7 +34,8 @@ def priors_of(clean: CleanLine | None) -> tuple[Prior, ...]:
     depression = _courses(
         clean.depression if clean is not None else 0.0, LEAST_DEPRESSION_U, stays=0.003 * BAR
     )
-    offset = _courses(0.0, TRANSDUCER, stays=0.012 * BAR, signed=False)
+    at_rest = TRANSDUCER if level_stated else UNKNOWN_LEVEL
+    offset = _courses(0.0, at_rest, stays=0.012 * BAR, signed=False)
     return viscous, quadratic, depression, offset
 
 

@@ -56,6 +56,7 @@ class Rows:
     running: Mask
     set_aside: SetAside
     level_known: bool  # a level record moves ``still``
+    level_stated: bool  # the level above the inlet is given; else it is taken as zero
     headspace_known: bool
     coldest: float = float("nan")  # [K], 0.1 % of the running bins, starved ones too
     headspace_drop: float | None = None  # [Pa], air minus head space, last twentieth, running
@@ -115,6 +116,7 @@ def suction_rows(case: Case, aligned: AlignedRecord) -> Rows | str:
         running=running,
         set_aside=SetAside(),
         level_known=level_known,
+        level_stated=case.reservoir.level_above_inlet is not None,
         headspace_known=headspace_known,
         coldest=float(np.quantile(t[turning & forward], COLD_SHARE))
         if (turning & forward).any()
@@ -183,6 +185,8 @@ def _still(
     """
     base = np.full(aligned.time_s.shape, local_atmosphere(case))
     headspace = aligned.get("headspace pressure")
+    if headspace is not None and not np.isfinite(headspace.mean).any():
+        headspace = None
     if headspace is not None:
         base = headspace.mean.copy()
     stated = case.reservoir.level_above_inlet

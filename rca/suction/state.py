@@ -6,6 +6,7 @@ import numpy as np
 import numpy.typing as npt
 from scipy.stats import norm, qmc
 
+from rca.base.source import Reading
 from rca.case.model import Case
 from rca.case.site import local_atmosphere
 from rca.case.vocabulary import PartKind, PumpKind
@@ -169,6 +170,11 @@ def _rows(nominal: Budget, parts: dict[str, FloatArray]) -> tuple[tuple[str, flo
     return tuple(rows)
 
 
+def usable_temperature(temperature: Reading | None) -> bool:
+    """Whether the viscosity relation holds there, with room for the uncertainty."""
+    return temperature is not None and 213.0 <= temperature.value <= 563.0
+
+
 def missing_inputs(case: Case) -> tuple[str, ...]:
     """What the pressure budget needs and the case does not give, as keys of case.toml."""
     pump, fluid = case.pump, case.fluid
@@ -177,6 +183,10 @@ def missing_inputs(case: Case) -> tuple[str, ...]:
         (pump.displacement is None, "pump.displacement"),
         (pump.speed is None, "pump.speed"),
         (fluid.temperature is None, "fluid.temperature"),
+        (
+            fluid.temperature is not None and not usable_temperature(fluid.temperature),
+            "fluid.temperature between -60 and 290 degC",
+        ),
         (fluid_viscosities(case) is None, "fluid.viscosity_40 and viscosity_100, or fluid.iso_vg"),
     )
     return tuple(name for absent, name in tests if absent)

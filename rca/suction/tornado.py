@@ -9,7 +9,7 @@ from scipy.optimize import brentq
 from rca.case.model import Case
 from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.budget import fluid_viscosities, pressure_budget, pump_flow
-from rca.suction.state import draws, inlet_limit, sampled_losses
+from rca.suction.state import draws, inlet_limit, sampled_losses, usable_temperature
 
 FloatArray = npt.NDArray[np.float64]
 COLDEST = 233.15  # [K]; oil below -40 degC is not pumped
@@ -79,7 +79,7 @@ def coldest_within_limit(case: Case) -> float | None:
     flow, warm = pump_flow(case), case.fluid.temperature
     if limit is None or flow is None or warm is None or not case.suction_line:
         return None
-    if fluid_viscosities(case) is None or float(flow) <= 0.0:
+    if fluid_viscosities(case) is None or float(flow) <= 0.0 or not usable_temperature(warm):
         return None
 
     def margin(t: float) -> float:
