@@ -25,6 +25,7 @@ from rca.suction.state import (
     inlet_limit,
     inlet_state,
     missing_inputs,
+    usable_temperature,
 )
 from rca.suction.tornado import Swing, coldest_as_found, coldest_within_limit, margin_swings
 
@@ -163,7 +164,9 @@ def _pulsation_bound(case: Case) -> float | None:
     )
     if not inertance:
         return None
-    rho = oil_density(case, case.fluid.temperature.value if case.fluid.temperature else 313.15)
+    warm = case.fluid.temperature
+    usable = warm is not None and usable_temperature(warm)
+    rho = oil_density(case, warm.value if warm is not None and usable else 313.15)
     return float(
         rigid_column_dip(rho, inertance, float(flow), pump.speed.value, pump.elements or 3)
     )
