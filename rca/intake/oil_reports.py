@@ -153,21 +153,19 @@ def _meant(one: Excluded, sample: OilSample) -> bool:
 
 
 def _proposals(report: OilReportFile, layout: Layout) -> list[str]:
-    """Lines for case.toml: columns the reader does not know, and units that are not said."""
-    lines = []
+    """The line for case.toml: columns the reader does not know, and units that are not said."""
+    meanings: dict[str, str] = {}
     for _, title in layout.unknown:
         near = nearest(fold(title).replace(" ", "_"), _PROPERTIES, most=1)
-        guess = f"{near[0]} [{property_of(near[0]).unit}]" if near else "ignore"
-        lines.append(_line(report, title, guess))
+        meanings[title] = f"{near[0]} [{property_of(near[0]).unit}]" if near else "ignore"
     for column in layout.columns:
         kept = property_of(column.heading.name)
         if not column.heading.unit and kept.stated:
-            lines.append(_line(report, column.title, f"{kept.name} [{kept.unit}]"))
-    return lines
-
-
-def _line(report: OilReportFile, title: str, meaning: str) -> str:
-    return f'{report.file}: columns = {{ "{_toml(title)}" = "{meaning}" }}'
+            meanings[column.title] = f"{kept.name} [{kept.unit}]"
+    if not meanings:
+        return []
+    pairs = ", ".join(f'"{_toml(title)}" = "{meaning}"' for title, meaning in meanings.items())
+    return [f"{report.file}: columns = {{ {pairs} }}"]
 
 
 def _unknown_columns(report: OilReportFile, layout: Layout, sha256: str) -> list[UnreadCell]:
