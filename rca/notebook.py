@@ -67,7 +67,7 @@ from rca.figures.verdict import figures_verdict
 from rca.intake.oil_reports import OilReading, read_oil_reports
 from rca.intake.read import read_case
 from rca.intake.record_files import RecordReading, read_records
-from rca.oil.check import check_oil
+from rca.oil.check import OilCheck, check_oil
 from rca.records.bursts import BurstFinding, burst_finding
 from rca.records.check import RecordCheck, check_records, usable
 from rca.suction.check import SuctionCheck, check_suction, inlet_limit
@@ -82,6 +82,7 @@ __all__ = [
     "DamageCheck",
     "DischargeCheck",
     "Investigation",
+    "OilCheck",
     "RecordCheck",
     "SuctionCheck",
     "VerdictCheck",

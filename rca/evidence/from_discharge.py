@@ -112,8 +112,8 @@ def _fuel_words(fuel: FuelPath) -> str:
     if fuel.lean_limit is None or fuel.margin is None or fuel.flash_point is None:
         return " ".join(fuel.reasons)
     return (
-        f"Flash point {fuel.flash_point.value - 273.15:.0f} degC ({fuel.flash_point.origin.value})"
-        f": the bubble's wall would have to reach {fuel.lean_limit.p50 - 273.15:.0f} degC for an "
+        f"Flash point {fuel.flash_point.value - 273.15:.0f} °C ({fuel.flash_point.origin.value})"
+        f": the bubble's wall would have to reach {fuel.lean_limit.p50 - 273.15:.0f} °C for an "
         f"ignitable vapour and falls short by {fuel.margin.p50:.0f} K (5 to 95 %: "
         f"{fuel.margin.p05:.0f} to {fuel.margin.p95:.0f} K); oil thrown into the gas as liquid "
         "was not looked at."

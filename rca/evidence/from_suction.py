@@ -162,7 +162,7 @@ def _computed(case: Case, check: SuctionCheck) -> Items:
             ),
             statement=(
                 f"Computed inlet pressure of the line as described, clean and warm: "
-                f"{state.pressure.mean / 1e5:.2f} +/- {state.pressure.sd / 1e5:.2f} bar(a); limit "
+                f"{state.pressure.mean / 1e5:.2f} ± {state.pressure.sd / 1e5:.2f} bar(a); limit "
                 f"{check.limit / 1e5:.2f} bar(a)."
             ),
             sources=_descriptor(case),
@@ -233,7 +233,7 @@ def _cold(check: SuctionCheck) -> EvidenceItem | NotAssessed:
         share = cold.below_limit
         words = (
             f"At the coldest start the computed inlet pressure of the clean line is "
-            f"{cold.pressure.mean / 1e5:.2f} +/- {cold.pressure.sd / 1e5:.2f} bar(a)."
+            f"{cold.pressure.mean / 1e5:.2f} ± {cold.pressure.sd / 1e5:.2f} bar(a)."
         )
     else:
         return NotAssessed(
@@ -281,7 +281,7 @@ def _too_small(case: Case, check: SuctionCheck) -> EvidenceItem | NotAssessed:
         likelihood={"no": 0.95 - 0.9 * below, "yes": 0.1 + 0.85 * below},
         statement=(
             f"Clean and warm, with the air of sea level, the line as described is computed at "
-            f"{sea / 1e5:.2f} +/- {state.pressure.sd / 1e5:.2f} bar(a); limit "
+            f"{sea / 1e5:.2f} ± {state.pressure.sd / 1e5:.2f} bar(a); limit "
             f"{check.limit / 1e5:.2f} bar(a)."
         ),
         sources=_descriptor(case),

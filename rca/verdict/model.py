@@ -3,6 +3,8 @@
 from dataclasses import dataclass, field
 
 from rca.base.source import Source
+from rca.verdict.order import Order
+from rca.verdict.without import Without
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -25,6 +27,8 @@ class WeighedItem:
     suction_ratio: float  # Bayes factor for the suction side, given everything else
     discharge_ratio: float
     by_mechanism: dict[str, float]
+    suction_alone: float = 1.0  # Bayes factor were this the only item
+    discharge_alone: float = 1.0
     likelihood: dict[str, float] = field(default_factory=dict)  # of the finding, by state
 
 
@@ -46,6 +50,7 @@ class GroupWeight:
     items: tuple[str, ...]
     suction_ratio: float
     discharge_ratio: float
+    capped: str = ""  # in words, where a ratio is beyond what judgement may claim
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -97,6 +102,8 @@ class Words:
     against: tuple[str, ...]
     biggest_doubt: str
     rule: str  # the decision rule that gave the side
+    caps: str = ""  # where judgement is held back, and by how much
+    together: str = ""  # what all items do together, and how strong the strongest is
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -114,6 +121,8 @@ class Verdict:
     sensitivity: tuple[dict[str, str | float], ...]  # leave-one-out
     words: Words
     contradictions: tuple[str, ...] = ()
+    order: Order | None = None  # which side showed first; asked where both took part
+    without: tuple[Without, ...] = ()  # one cause taken away
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -10,7 +10,7 @@ from scipy.stats import qmc
 
 from rca.evidence.item import EvidenceItem
 from rca.verdict.knowledge import Knowledge
-from rca.verdict.model import Band, Robustness
+from rca.verdict.model import Band, Robustness, WeighedItem
 from rca.verdict.network import Numbers, number_keys
 from rca.verdict.posterior import Posterior, held_back, leave_out, odds, posterior, reported
 from rca.verdict.side import HELD, side_of
@@ -28,6 +28,7 @@ def robustness(
     ids: Mapping[str, str],
     shown: Posterior,
     without: Posterior | None,
+    weighed: Sequence[WeighedItem],
     groups: int,
     *,
     seed: int,
@@ -39,7 +40,7 @@ def robustness(
     """
     side, _ = shown.side(groups)
     suction, discharge, same = _drawn(knowledge, items, side, groups, seed=seed, draws=draws)
-    second = _second_method(knowledge, items)
+    second = _second_method(knowledge, weighed)
     flip = _flip_set(knowledge, items, shown, without, groups)
     return Robustness(
         draws=suction.size,
@@ -132,7 +133,7 @@ def _moved(base: Posterior, found: Posterior) -> FloatArray:
     )
 
 
-def _second_method(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> str:
+def _second_method(knowledge: Knowledge, items: Sequence[WeighedItem]) -> str:
     """A second, simpler look: the strongest single item of each group, multiplied.
 
     Each item's ratio for a side is taken alone against the prior, so nothing of the network's
@@ -142,16 +143,10 @@ def _second_method(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> str:
     prior = posterior(knowledge, [])
     log_s, log_d = (float(np.log(odds(float(p[0])))) for p in (prior.suction, prior.discharge))
     best: dict[str, tuple[float, float]] = {}
-    if items:
-        only = [{other.key for other in items} - {item.key} for item in items]
-        alone = posterior(knowledge, items, weights=leave_out(items, only))
-        s_all, d_all = np.log(odds(alone.suction)) - log_s, np.log(odds(alone.discharge)) - log_d
-        for item, s, d in zip(items, s_all, d_all, strict=True):
-            old = best.get(item.group.value, (0.0, 0.0))
-            best[item.group.value] = (
-                max(old[0], float(s), key=abs),
-                max(old[1], float(d), key=abs),
-            )
+    for item in items:
+        s, d = float(np.log(item.suction_alone)), float(np.log(item.discharge_alone))
+        old = best.get(item.group, (0.0, 0.0))
+        best[item.group] = (max(old[0], s, key=abs), max(old[1], d, key=abs))
     p_s = 1 / (1 + np.exp(-(log_s + sum(s for s, _ in best.values()))))
     p_d = 1 / (1 + np.exp(-(log_d + sum(d for _, d in best.values()))))
     sides = {"suction": p_s, "discharge": p_d, "neither": (1 - p_s) * (1 - p_d)}

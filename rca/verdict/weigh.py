@@ -5,11 +5,15 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 
 from rca.case.vocabulary import MECHANISMS
+from rca.discharge.model import DischargeCheck
 from rca.evidence.item import EvidenceItem, NotAssessed
-from rca.verdict.explain import DULL, explain, verbal
+from rca.oil.check import OilCheck
+from rca.suction.check import SuctionCheck
+from rca.verdict.explain import DULL, GROUP_CAP, explain, verbal
 from rca.verdict.knowledge import Knowledge
 from rca.verdict.model import GroupWeight, RankedCause, Verdict, VerdictCheck, WeighedItem
 from rca.verdict.next_test import next_tests
+from rca.verdict.order import order_of
 from rca.verdict.posterior import (
     SIDED,
     Posterior,
@@ -22,6 +26,7 @@ from rca.verdict.posterior import (
     reported,
 )
 from rca.verdict.robust import DRAWS, robustness
+from rca.verdict.without import without_causes
 
 __all__ = ["marginal", "posterior", "reported", "weigh"]
 
@@ -34,24 +39,34 @@ def weigh(
     seed: int,
     draws: int = DRAWS,
     contradictions: Sequence[str] = (),
+    suction: SuctionCheck | None = None,
+    discharge: DischargeCheck | None = None,
+    oil: OilCheck | None = None,
 ) -> VerdictCheck:
-    """The verdict on a set of items, with every step shown."""
+    """The verdict on a set of items, with every step shown.
+
+    The checks are asked only for the order of the two sides and for what the inlet and the
+    bubble would have been with one cause taken away; they carry no weight beside their items.
+    """
     ids = {item.key: f"E{n:02d}" for n, item in enumerate(items, start=1)}
     prior = posterior(knowledge, [])
     base = posterior(knowledge, items)
     shown = held_back(base, prior, knowledge.doubt)
     groups = len({item.group for item in items if item.basis.value != "stated"})
     side, rule = shown.side(groups)
-    without = (
-        posterior(knowledge, items, weights=leave_out(items, [{i.key} for i in items]))
-        if items
-        else None
-    )
+    without = alone = None
+    if items:
+        one = [{item.key} for item in items]
+        without = posterior(knowledge, items, weights=leave_out(items, one))
+        rest = [{other.key for other in items} - out for out in one]
+        alone = posterior(knowledge, items, weights=leave_out(items, rest))
     shown_without = held_back(without, prior, knowledge.doubt) if without is not None else None
-    weighed = _weighed(items, ids, base, without)
+    weighed = _weighed(items, ids, base, without, prior, alone)
+    by_group = _groups(knowledge, items, ids, base)
     robust = robustness(
-        knowledge, items, ids, shown, shown_without, groups, seed=seed, draws=draws
+        knowledge, items, ids, shown, shown_without, weighed, groups, seed=seed, draws=draws
     )
+    tests = next_tests(knowledge, items, not_assessed, side, groups, _ask)
     hidden = marginals(knowledge, items, knowledge.names("cause") + knowledge.names("condition"))
     verdict = Verdict(
         side=side,
@@ -59,12 +74,27 @@ def weigh(
         mechanisms=shown.mechanism(),
         prior=prior.sides() | prior.mechanism(),
         conditions={name: hidden[name] for name in knowledge.names("condition")},
-        groups=_groups(knowledge, items, ids, base),
+        groups=by_group,
         robustness=robust,
-        next_tests=next_tests(knowledge, items, not_assessed, side, groups, _ask),
+        next_tests=tests,
         sensitivity=_sensitivity(items, ids, shown_without, groups),
-        words=explain(side, rule, shown.sides(), shown.mechanism(), weighed, not_assessed, robust),
+        words=explain(
+            side,
+            rule,
+            shown.sides(),
+            shown.mechanism(),
+            weighed,
+            not_assessed,
+            robust,
+            knowledge=knowledge,
+            groups=by_group,
+            tests=tests,
+            network=base.sides(),
+            prior=prior.sides(),
+        ),
         contradictions=tuple(contradictions),
+        order=order_of(suction, oil) if side == "both" else None,
+        without=without_causes(suction, discharge),
     )
     return VerdictCheck(
         verdict=verdict,
@@ -84,8 +114,10 @@ def _weighed(
     ids: Mapping[str, str],
     base: Posterior,
     without: Posterior | None,
+    prior: Posterior,
+    alone: Posterior | None,
 ) -> tuple[WeighedItem, ...]:
-    if without is None:
+    if without is None or alone is None:
         return ()
     out = []
     for n, item in enumerate(items):
@@ -122,6 +154,8 @@ def _weighed(
                 suction_ratio=suction,
                 discharge_ratio=discharge,
                 by_mechanism=by,
+                suction_alone=float(odds(alone.suction[n]) / odds(prior.suction[0])),
+                discharge_alone=float(odds(alone.discharge[n]) / odds(prior.discharge[0])),
                 likelihood=dict(item.likelihood),
             )
         )
@@ -137,13 +171,29 @@ def _groups(
     sets = [{i.key for i in items if i.group.value == name} for name in names]
     without = posterior(knowledge, items, weights=leave_out(items, sets))
     return tuple(
-        GroupWeight(
-            group=name,
-            items=tuple(ids[i.key] for i in items if i.group.value == name),
-            suction_ratio=float(odds(base.suction[0]) / odds(without.suction[n])),
-            discharge_ratio=float(odds(base.discharge[0]) / odds(without.discharge[n])),
+        _group(
+            name,
+            tuple(ids[i.key] for i in items if i.group.value == name),
+            float(odds(base.suction[0]) / odds(without.suction[n])),
+            float(odds(base.discharge[0]) / odds(without.discharge[n])),
         )
         for n, name in enumerate(names)
+    )
+
+
+def _group(name: str, items: tuple[str, ...], suction: float, discharge: float) -> GroupWeight:
+    """A group with its ratios held to what judgement may claim, and that said."""
+    told = [
+        f"the odds of the {side} side would change by {max(r, 1 / r):.2g}, held to {GROUP_CAP:g}"
+        for side, r in (("suction", suction), ("discharge", discharge))
+        if max(r, 1 / r) > GROUP_CAP
+    ]
+    return GroupWeight(
+        group=name,
+        items=items,
+        suction_ratio=float(np.clip(suction, 1 / GROUP_CAP, GROUP_CAP)),
+        discharge_ratio=float(np.clip(discharge, 1 / GROUP_CAP, GROUP_CAP)),
+        capped="; ".join(told),
     )
 
 
