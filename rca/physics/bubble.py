@@ -103,7 +103,7 @@ def needs_inertia(
     """Whether the rise is too fast for the bubble to follow the line pressure.
 
     True where the rise time is under eight Rayleigh collapse times at the inlet pressure; then the
-    gas pressure ends above the line's. Where it is False the core is right within 2 % of the
+    gas pressure ends above the line's. Where it is False the core is right within 2.5 % of the
     adiabatic rise, but a ramp that starts abruptly (1 bar up by 172 bar/ms) still overtakes the
     line two- to fivefold for some 30 us at its very start, which warms the mean, not the core, by
     up to 130 K over the quasi-static value.
@@ -301,6 +301,11 @@ def bubble_batch(
     share(part, r.size, workers)
     _refuse_failures(outs, pars, keep_beyond=keep_beyond)
     return _peaks(outs, fast)
+
+
+def load_kernels() -> None:
+    """Load the compiled kernel (compiles it the first time on a machine), so that no call waits."""
+    bubble_batch(1e-4, 313.15, 1e5, 2e6, 1e-3, hold=1e-6)
 
 
 def share(part: Callable[[int, int], None], size: int, workers: int) -> None:

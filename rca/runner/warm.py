@@ -22,6 +22,7 @@ from typing import Any
 import matplotlib as mpl
 import numpy as np
 
+from rca.physics.bubble import load_kernels
 from rca.runner.shell import NotebookShell
 
 _PR_SET_PDEATHSIG = 1
@@ -38,8 +39,13 @@ def main() -> None:
     sys.stdout.write("ready\n")
     sys.stdout.flush()
     children: set[int] = set()
+    kernels_loaded = False
     while True:
-        ready, _, _ = select.select([listener, sys.stdin], [], [], 1.0)
+        ready, _, _ = select.select([listener, sys.stdin], [], [], 1.0 if kernels_loaded else 0.05)
+        if not ready and not kernels_loaded:
+            # idle while the first notebooks run: what is loaded now, later ones inherit
+            load_kernels()
+            kernels_loaded = True
         children = _reap(children)
         if sys.stdin in ready and not sys.stdin.read(1):
             break
