@@ -165,6 +165,10 @@ class Investigation:
         """
         return from_plain(kind, self.store.read(stage).check)
 
+    def result_if_any(self, stage: str, kind: type[T]) -> T | None:
+        """The typed result an earlier notebook stored; None where it had nothing to look at."""
+        return None if self.store.read(stage).check is None else self.result(stage, kind)
+
     def evidence(self) -> tuple[tuple[EvidenceItem, ...], tuple[NotAssessed, ...]]:
         """All items stored so far, in a fixed order: those that weigh, and those nobody saw."""
         stages = [self.store.read(stage) for stage in self.store.stages()]
