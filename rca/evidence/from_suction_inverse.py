@@ -7,11 +7,12 @@ from rca.suction.check import SuctionCheck
 from rca.suction.explanations import Explanation, Explanations, Share
 from rca.suction.inverse import Inverse, Track
 
-# share of such estimates that are wrong in a way their intervals do not show: a thermometer far from
-# the strainer, a loss between the two laws; judgement
+# share of such estimates that are wrong in a way their intervals do not show: a thermometer far
+# from the strainer, a loss between the two laws; judgement
 MISREAD = 0.10
 MOST_UNSEEN = 3.0  # the same for a level nobody recorded; judgement
 MOST = 200.0  # largest odds one record may give before MISREAD is mixed in
+SHUT_SEEN = 0.95  # probability of a depression where the tank is seen not to breathe; judgement
 LEVEL_SEEN = 0.03e5  # [Pa], about a third of a metre of oil
 NODES = {
     Explanation.CLOGGED_STRAINER: ("inlet.viscous", Node.STRAINER_RESISTANCE),
@@ -94,11 +95,14 @@ def _item(
             found.clean.depression if found.clean else None,
         ),
     }[kind]
+    raised, breath = share.raised, ""
+    if kind is Explanation.PLUGGED_BREATHER:
+        raised, breath = _breath(inverse, raised)
     return EvidenceItem(
         key=key,
         node=node,
-        likelihood=weighed(share.raised, share.raised_before),
-        statement=_words(name, track, clean, share),
+        likelihood=weighed(raised, share.raised_before),
+        statement=_words(name, track, clean, share) + breath,
         sources=sources,
         group=Group.INLET,
         common_cause="sensor of the inlet pressure",
@@ -109,8 +113,23 @@ def _item(
             u=(track.p95[-1] - track.p05[-1]) / 3.29,
             origin=Origin.CALCULATED,
         ),
-        absent=share.raised < 0.5,
+        absent=raised < 0.5,
     )
+
+
+def _breath(inverse: Inverse, raised: float) -> tuple[float, str]:
+    """Probability of a depression once the level's swing is looked at, and that look in words."""
+    found = inverse.breathing
+    if found is None or found.verdict == "not told":
+        return raised, ""
+    words = (
+        f" {found.level_swing * 1e3:.0f} mm of level swing move the tank's pressure by "
+        f"{abs(found.tank_swing.p50) / 1e5:.3f} bar; without a breather about "
+        f"{found.shut_swing / 1e5:.2f} bar."
+    )
+    if found.verdict == "shut":
+        return max(raised, SHUT_SEEN), words
+    return min(raised, 1.0 - SHUT_SEEN), words
 
 
 def _words(name: str, track: Track, clean: float | None, share: Share) -> str:

@@ -9,6 +9,7 @@ import numpy.typing as npt
 from rca.case.model import Case, SuctionPart
 from rca.case.vocabulary import PartKind
 from rca.physics.viscosity import kinematic_viscosity
+from rca.suction.breathing import Breathing
 from rca.suction.budget import (
     GRAVITY,
     fluid_viscosities,
@@ -16,7 +17,7 @@ from rca.suction.budget import (
 )
 from rca.suction.clean_line import CleanLine
 from rca.suction.inverse import Inverse, InverseDraws
-from rca.suction.priors import NOTICED
+from rca.suction.priors import BAR, NOTICED
 from rca.suction.spread import Spread, spread
 from rca.suction.state import inlet_limit
 
@@ -360,6 +361,8 @@ def _notes(case: Case, inverse: Inverse) -> dict[str, str]:
         else "The flow hardly varied: quadratic loss and tank depression are known only together."
     )
     breather = flow
+    if inverse.breathing is not None:
+        breather += " " + _breath_words(inverse.breathing)
     if inverse.headspace_known:
         breather = "The head space is on record and already taken off; what is left is not it."
     rest = (
@@ -381,6 +384,16 @@ def _notes(case: Case, inverse: Inverse) -> dict[str, str]:
         "level": level,
         "transducer": rest,
     }
+
+
+def _breath_words(found: Breathing) -> str:
+    swing = f"{found.level_swing * 1e3:.0f} mm of level move the tank by "
+    swing += f"{found.tank_swing.p50 / BAR:.3f} bar ({found.tank_swing.p05 / BAR:.3f} to "
+    swing += f"{found.tank_swing.p95 / BAR:.3f}), a shut one by about {found.shut_swing / BAR:.2f}"
+    return {
+        "free": f"The reservoir breathes: {swing}.",
+        "shut": f"The reservoir does not breathe: {swing}.",
+    }.get(found.verdict, f"Breathing not told: {swing}.")
 
 
 def _stepwise(values: tuple[float, ...]) -> bool:

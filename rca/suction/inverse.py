@@ -19,9 +19,10 @@ from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.bounded_draws import bounded_mixture
+from rca.suction.breathing import Breathing, breathing
 from rca.suction.budget import fluid_viscosities, oil_density, pump_flow
 from rca.suction.clean_line import CleanLine, Excitation, clean_line
-from rca.suction.priors import NOTICED, priors_of
+from rca.suction.priors import NOTICED, priors_of, told_by_breathing
 from rca.suction.rows import Rows, SetAside, suction_rows
 from rca.suction.spread import Spread, spread
 from rca.suction.state import usable_temperature
@@ -88,6 +89,7 @@ class Inverse:
     level_stated: bool
     headspace_known: bool
     headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
+    breathing: Breathing | None  # None where no swing of the level is on record
     contradicted: tuple[str, ...]  # unknowns the record asks to be negative
     remarks: tuple[str, ...] = ()
 
@@ -129,7 +131,9 @@ def estimate_resistances(
     knots = _knots(rows)
     excitation = _excitation(rows, x)
     clean = clean_line(case, flow, temperature, excitation)
-    priors = priors_of(clean, level_stated=rows.level_stated)
+    breath = breathing(case, rows, x)
+    plain = priors_of(clean, level_stated=rows.level_stated)
+    priors = told_by_breathing(plain, breath.verdict if breath is not None else "not told")
     fit = fit_varying(rows.time, y, x, knots, priors)
     rng = np.random.default_rng(seed)
     first, last, contradicted = _ends(fit, rng)
@@ -157,11 +161,12 @@ def estimate_resistances(
         excitation=excitation,
         correlation=_correlation(last),
         clean=clean,
-        raised_before=_raised_before(prior, clean),
+        raised_before=_raised_before(_prior_draws(plain, knots.size, rng), clean),
         level_known=rows.level_known,
         level_stated=rows.level_stated,
         headspace_known=rows.headspace_known,
         headspace_drop=rows.headspace_drop,
+        breathing=breath,
         contradicted=contradicted,
         remarks=_remarks(rows, aside),
     )
@@ -277,7 +282,7 @@ def _tracks(fit: VaryingFit, prior: FloatArray, rng: np.random.Generator) -> dic
         ):
             low, mid, high = (float(v) for v in np.quantile(a, [0.05, 0.5, 0.95]))
             width = float(np.subtract(*np.quantile(b, [0.95, 0.05])))
-            rows[name].append((low, mid, high, (high - low) / width))
+            rows[name].append((low, mid, high, (high - low) / max(width, USEFUL)))
     return {name: _track(name, values) for name, values in rows.items()}
 
 

@@ -6,6 +6,8 @@ speaks for one of them: how often a strainer clogs and a breather plugs belongs 
 Losses and depression are at least zero.
 """
 
+from dataclasses import replace
+
 from scipy.stats import multivariate_normal
 
 from rca.suction.clean_line import CleanLine
@@ -37,6 +39,21 @@ def priors_of(clean: CleanLine | None, *, level_stated: bool = True) -> tuple[Pr
     at_rest = TRANSDUCER if level_stated else UNKNOWN_LEVEL
     offset = _courses(0.0, at_rest, stays=0.012 * BAR, signed=False)
     return viscous, quadratic, depression, offset
+
+
+def told_by_breathing(priors: tuple[Prior, ...], verdict: str) -> tuple[Prior, ...]:
+    """The courses once the swing of the level has shown whether the breather lets air in.
+
+    Where it does, a depression that is not as described gets a twentieth of its weight; where it
+    does not, twenty times.
+    """
+    factor = {"free": 0.05, "shut": 20.0}.get(verdict, 1.0)
+    viscous, quadratic, depression, offset = priors
+    weights = [c.weight * (1.0 if k == 0 else factor) for k, c in enumerate(depression)]
+    told = tuple(
+        replace(c, weight=w / sum(weights)) for c, w in zip(depression, weights, strict=True)
+    )
+    return viscous, quadratic, told, offset
 
 
 def _courses(mean: float, u: float, *, stays: float, signed: bool = True) -> Prior:

@@ -54,6 +54,7 @@ class Rows:
     rho: FloatArray  # [kg/m3]
     temperature: FloatArray  # [K]
     running: Mask
+    level: FloatArray | None  # [m], recorded; None where it is not
     set_aside: SetAside
     level_known: bool  # a level record moves ``still``
     level_stated: bool  # the level above the inlet is given; else it is taken as zero
@@ -65,7 +66,10 @@ class Rows:
         """The rows of a mask."""
         names = ("time", "pressure", "still", "flow", "nu", "rho", "temperature", "running")
         return replace(
-            self, set_aside=set_aside, **{name: getattr(self, name)[keep] for name in names}
+            self,
+            set_aside=set_aside,
+            level=self.level[keep] if self.level is not None else None,
+            **{name: getattr(self, name)[keep] for name in names},
         )
 
 
@@ -114,6 +118,7 @@ def suction_rows(case: Case, aligned: AlignedRecord) -> Rows | str:
         rho=rho,
         temperature=t,
         running=running,
+        level=_level(aligned),
         set_aside=SetAside(),
         level_known=level_known,
         level_stated=case.reservoir.level_above_inlet is not None,
@@ -153,6 +158,17 @@ def _steady(aligned: AlignedRecord, running: Mask) -> Mask:
             steady &= spread <= UNSTEADY * np.abs(np.nan_to_num(found.mean))
     enough = int((steady & running).sum()) > 0.3 * int(running.sum())
     return steady if enough else np.ones_like(steady)
+
+
+def _level(aligned: AlignedRecord) -> FloatArray | None:
+    """The recorded level with its gaps at the median; None where most of it is a gap."""
+    sensor = aligned.get("reservoir level")
+    if sensor is None:
+        return None
+    seen = np.isfinite(sensor.mean)
+    if seen.mean() < 0.5:
+        return None
+    return np.where(seen, sensor.mean, float(np.median(sensor.mean[seen])))
 
 
 def _headspace_drop(case: Case, aligned: AlignedRecord, running: Mask) -> float | None:

@@ -4,7 +4,7 @@ The truth is stated in the unknowns of the inverse at warm, full flow; weather a
 are autocorrelated, and a few samples are wrong.
 """
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -39,9 +39,10 @@ class Truth:
     one_temperature: bool = False
     rest: bool = True
     level_recorded: bool = True
+    swing_m: float = 0.0  # quick swing of the level while running, peak to peak
+    tank_bar_per_m: float = 0.0  # how far the tank follows it; a shut one some ten bar a metre
     noise: float = 400.0
     weather: float = 600.0
-    extra: dict = field(default_factory=dict)
 
 
 SCENARIOS = (
@@ -93,12 +94,14 @@ def record(case: Case, truth: Truth, *, seed: int) -> AlignedRecord:
         return BAR * course(pair, share, truth.step_at)
 
     level = 0.4 + course(truth.level_m, share, None)
+    quick = 0.5 * truth.swing_m * np.sign(np.sin(2 * np.pi * time / 900.0)) * running
+    level = level + quick
     air = float(
         101325.0 * (1.0 - 2.25577e-5 * case.header.altitude.value) ** 5.25588
     )  # ISO 2533, written out once more
     still = air + rho * 9.80665 * level
     p = still + of(truth.offset) - of(truth.viscous) * u1 - of(truth.quadratic) * u2
-    p = p - of(truth.depression) * running
+    p = p - of(truth.depression) * running + BAR * truth.tank_bar_per_m * quick
     p = p + red(rng, n, truth.weather, 2 * 86400 / truth.step_s) + red(rng, n, truth.noise, 0.8)
     wrong = rng.random(n) < 0.001
     p[wrong] += rng.normal(0, 2e4, int(wrong.sum()))

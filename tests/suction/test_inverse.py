@@ -155,6 +155,24 @@ def test_a_record_that_can_not_tell_says_so(
     assert {e.value for e in together} <= set(between)
 
 
+@pytest.mark.parametrize(
+    ("truth", "tank", "said"),
+    [
+        (2, 0.0, Explanation.PINCHED_LINE),
+        (3, 4.0, Explanation.PLUGGED_BREATHER),
+    ],
+)
+def test_the_swing_of_the_level_tells_a_breather_from_a_pinch(
+    small_case: Case, truth: int, tank: float, said: Explanation
+) -> None:
+    """With one speed neither is told (see above); with the tank's own breathing both are."""
+    swinging = replace(
+        SCENARIOS[truth], two_speeds=False, swing_m=0.03, tank_bar_per_m=tank, step_s=120.0, days=8
+    )
+    name, _, _ = leading(small_case, swinging)
+    assert name == said.value
+
+
 def test_one_temperature_leaves_the_viscous_loss_of_an_undescribed_line_open(
     small_case: Case,
 ) -> None:
