@@ -94,7 +94,10 @@ def _assemble(
     coarse = sampled[-1]
     assumed = inputs.assumed
     if inputs.discharge.value > P_RANGE[1]:
-        assumed = (*assumed, "ignition delay beyond its table's 350 bar, by extrapolation")
+        assumed = (
+            *assumed,
+            f"ignition delay beyond its table's {P_RANGE[1] / 1e5:.0f} bar, by extrapolation",
+        )
     t, p1, p2 = inputs.temperature.value, inputs.inlet.value, inputs.discharge.value
     drawn = coarse.draw
     populations = tuple(s.population for s in sampled)

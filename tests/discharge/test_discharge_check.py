@@ -11,7 +11,6 @@ from rca.base.source import Origin, Reading, Source
 from rca.case.model import Case, Pump
 from rca.case.vocabulary import FluidClass, PumpKind
 from rca.discharge.check import check_discharge, high_pressure, hot_status, ignition_status
-from rca.discharge.delay import delays, ignition_delay
 from rca.discharge.fuel import lean_limit_temperature
 from rca.discharge.inputs import TRANSITION_DEGREES, gather, oil_side, rise_time
 from rca.discharge.model import Status
@@ -193,39 +192,6 @@ def test_ignition_needs_both(small_case):
     assert ignition_status(Status.NOT_EXCLUDED, vapour) is Status.NOT_EXCLUDED
 
 
-@pytest.mark.outside_value(
-    source="Wang, Ra, Jia, Reitz, Fuel 136 (2014) mechanism through Cantera: n-dodecane, phi 1"
-)
-@pytest.mark.parametrize(("t", "bar", "us"), [(850, 170, 69.0), (1000, 170, 58.9), (650, 10, 26300), (1300, 350, 3.9)])  # fmt: skip
-def test_ignition_delay_at_its_grid_points(t, bar, us):
-    assert ignition_delay(t, bar * 1e5) * 1e6 == pytest.approx(us, rel=1e-6)
-
-
-@pytest.mark.outside_value(
-    source="Stringer et al. 1969 in Heywood, ICE Fundamentals, table 10.3 (from memory): 0.0405 p^-0.757 exp(5473/T) ms"
-)
-def test_ignition_delay_is_of_the_order_of_a_diesel_correlation():
-    # inside the correlation's own range, 30-60 atm and 770-980 K, diesel is slower than dodecane
-    diesel = 0.0405e-3 * 50**-0.757 * np.exp(5473 / 850)
-    assert 0.2 < ignition_delay(850.0, 50e5) / diesel < 1.5
-
-
-def test_the_kernel_s_grid_follows_the_delay():
-    from rca.physics.bubble_notes import log_delay
-
-    grid = delays()
-    rng = np.random.default_rng(0)
-    for t, p in zip(rng.uniform(660, 1290, 50), rng.uniform(11e5, 340e5, 50), strict=True):
-        got = np.exp(log_delay(1 / t, np.log(p), grid.log_delay, grid.frame))
-        assert got == pytest.approx(float(ignition_delay(t, p)), rel=0.04)
-
-
-@pytest.mark.parametrize("bad", [(600.0, 50e5), (900.0, 5e5), (float("nan"), 50e5)])
-def test_ignition_delay_refuses(bad):
-    with pytest.raises(OutOfRangeError, match="650-1300 K"):
-        ignition_delay(*bad)
-
-
 def test_delay_grid_refuses():
     with pytest.raises(OutOfRangeError):
         delay_grid(lambda t, p: t * 0, t_range=(600.0, 900.0), p_range=(1e5, 1e6))
@@ -293,5 +259,5 @@ def test_extreme_machines_get_an_answer(small_case, inlet, more):
     if inlet[0] < 0.1e5:  # the spike of a spherical collapse, an upper bound, adds no vapour
         assert found.fuel.vapour < 0.05
     assert (violent > 0) is (inlet[0] < 0.5e5)
-    if found.discharge_pressure.value > 350e5:
-        assert any("350 bar" in words for words in found.assumed)
+    if found.discharge_pressure.value > 450e5:
+        assert any("450 bar" in words for words in found.assumed)
