@@ -24,7 +24,8 @@ def test_a_tank_that_follows_its_level_does_not_breathe(small_case: Case) -> Non
     told = found(small_case, replace(BASE, tank_bar_per_m=4.0))
     assert told is not None
     assert told.verdict == "shut"
-    assert told.tank_swing.p50 / 1e5 == pytest.approx(4.0 * 0.03, rel=0.1)
+    assert told.level_swing == pytest.approx(0.03, rel=0.25)
+    assert told.tank_swing.p50 / 1e5 == pytest.approx(4.0 * told.level_swing, rel=0.03)
 
 
 def test_a_tank_that_does_not_breathes(small_case: Case) -> None:
@@ -41,7 +42,8 @@ def test_a_tank_that_does_not_breathes(small_case: Case) -> None:
 def test_a_shut_tank_follows_boyle(small_case: Case) -> None:
     told = found(small_case, BASE)
     assert told is not None
-    assert told.shut_swing / 1e5 == pytest.approx(0.23, rel=0.05)
+    per_metre = told.shut_swing / told.level_swing
+    assert per_metre * 0.03 / 1e5 == pytest.approx(0.2335, rel=0.01)
 
 
 def test_sensor_noise_is_no_swing(small_case: Case) -> None:
