@@ -1,9 +1,11 @@
 """Panels of the verdict: explanations, weight of evidence, causes, next tests."""
 
+from collections.abc import Callable
+
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.case.vocabulary import DISCHARGE_MECHANISMS, SUCTION_MECHANISMS
-from rca.figures.numbers import ratio, share
-from rca.verdict.explain import CHANCE, SCALE
+from rca.figures.numbers import bar, celsius, ratio, share
+from rca.verdict.explain import CHANCE, GROUP_CAP, SCALE, TOTAL_CAP
 from rca.verdict.model import VerdictCheck
 
 LIMITS = (
@@ -52,6 +54,7 @@ def _explanations(check: VerdictCheck) -> Panel:
         status=verdict.side,
         paragraphs=(
             f"Rule applied: {verdict.words.rule}.",
+            *_order_words(check),
             *(f"Contradiction in the evidence: {c}." for c in verdict.contradictions),
         ),
         tables=(
@@ -77,9 +80,30 @@ def _explanations(check: VerdictCheck) -> Panel:
                 caption="Mechanisms before and after the evidence.",
                 alt=verdict.words.finding,
             ),
+            FigureRef(
+                name="verdict-network",
+                caption="The network in the state of this case: causes, conditions, mechanisms. "
+                "Bars and numbers are probabilities; thicker frames are more probable than not; "
+                "lines run where one brings about the other.",
+                alt="Most probable: " + _most_probable(check) + ".",
+            ),
         ),
         limits=LIMITS,
     )
+
+
+def _most_probable(check: VerdictCheck) -> str:
+    shown = [c.cause for c in check.causes if c.probability >= 0.5 and c.cause != "unknown"]
+    shown += [name for name, p in check.verdict.mechanisms.items() if p >= 0.5]
+    return ", ".join(shown) or "nothing above one half"
+
+
+def _order_words(check: VerdictCheck) -> tuple[str, ...]:
+    """Which side came first, where both took part."""
+    order = check.verdict.order
+    if order is None:
+        return ()
+    return (f"Which side showed first: {order.first}. {order.why}",)
 
 
 def _weight(check: VerdictCheck) -> Panel:
@@ -114,6 +138,11 @@ def _weight(check: VerdictCheck) -> Panel:
                 caption="Items by mechanisms: plus signs speak for, bars against; size is weight.",
                 alt="Matrix of evidence items against mechanisms.",
             ),
+            FigureRef(
+                name="verdict-running",
+                caption="The sides as one group of evidence after the other is let in.",
+                alt=_running_words(check),
+            ),
         )
         if check.evidence
         else ()
@@ -128,6 +157,7 @@ def _weight(check: VerdictCheck) -> Panel:
             if check.evidence
             else "No item weighs; nothing was looked at."
         ),
+        paragraphs=tuple(w for w in (check.verdict.words.together, check.verdict.words.caps) if w),
         tables=(
             Table(
                 name="evidence",
@@ -155,13 +185,29 @@ def _weight(check: VerdictCheck) -> Panel:
                     Column(title="Odds of discharge", numeric=True),
                 ),
                 rows=groups,
-                note="Factor on the odds when the whole group is left in, against left out.",
+                note="Factor on the odds when the whole group is left in, against left out; "
+                f"held to {GROUP_CAP:g} a group and {TOTAL_CAP:g} in all, which is as far as "
+                "judgement may go.",
             ),
         )
         if check.evidence
         else (),
         figures=figures,
     )
+
+
+def _running_words(check: VerdictCheck) -> str:
+    steps = check.verdict.running
+    if len(steps) < 2:
+        return "No evidence was let in."
+    jump = max(
+        range(1, len(steps)),
+        key=lambda n: max(
+            abs(steps[n].suction - steps[n - 1].suction),
+            abs(steps[n].discharge - steps[n - 1].discharge),
+        ),
+    )
+    return f"The largest step comes with the group {steps[jump].group!r}."
 
 
 def _factor(x: float) -> str:
@@ -205,6 +251,15 @@ def _robust(check: VerdictCheck) -> Panel:
                 "and high values.",
             ),
         ),
+        figures=(
+            FigureRef(
+                name="verdict-tornado",
+                caption="Each side with one item left out: the items that would move it most.",
+                alt=check.verdict.words.biggest_doubt,
+            ),
+        )
+        if check.evidence
+        else (),
     )
 
 
@@ -242,9 +297,54 @@ def _causes(check: VerdictCheck) -> Panel:
                 note="Several causes can be present at once. 'unknown' is the probability that "
                 "none of the named causes was present.",
             ),
+            *_without(check),
         ),
         limits=(f"Words for probabilities: {_chance_words()}.",),
     )
+
+
+def _without(check: VerdictCheck) -> tuple[Table, ...]:
+    """One cause taken away: what the inlet and the bubble would have been."""
+    if not check.verdict.without:
+        return ()
+    likely = {c.cause: c.probability for c in check.causes}
+    rows = tuple(
+        (
+            w.change,
+            share(likely[w.cause]) if w.cause in likely else "",
+            _pair(w.inlet_before, w.inlet_after, bar),
+            _pair(w.released_before, w.released_after, lambda x: f"{100 * x:.1f}"),
+            _pair(w.bubble_before, w.bubble_after, celsius),
+            w.still,
+        )
+        for w in check.verdict.without
+    )
+    basis = next((w.basis for w in check.verdict.without if not w.cause and "Core" in w.basis), "")
+    return (
+        Table(
+            name="without-causes",
+            title="One thing put right, everything else as found",
+            columns=(
+                Column(title="Put right"),
+                Column(title="Cause present", numeric=True),
+                Column(title="Inlet", unit="bar(a)", numeric=True),
+                Column(title="Air released", unit="% of oil", numeric=True),
+                Column(title="Bubble", unit="\u00b0C", numeric=True),
+                Column(title="Then"),
+            ),
+            rows=rows,
+            note="Before and after, medians. Bubble: air compressed without heat loss, an upper "
+            "bound that the inlet hardly moves; a better inlet takes away the air, not the heat. "
+            + (f"Slower rise: {basis}" if basis else ""),
+        ),
+    )
+
+
+def _pair(before: float | None, after: float | None, form: Callable[[float], str]) -> str:
+    if after is None and before is None:
+        return ""
+    one = form(before) if before is not None else "starved"
+    return f"{one} \u2192 {form(after) if after is not None else 'starved'}"
 
 
 def _chance_words() -> str:

@@ -2,18 +2,28 @@
 
 import numpy as np
 from matplotlib.figure import Figure
+from scipy.special import expit, logit
 
 from rca.figures.numbers import share
-from rca.figures.style import DISCHARGE, GREY, PALE, SUCTION, new_figure
+from rca.figures.style import DISCHARGE, GREY, INK, MARKS, PALE, SUCTION, Mark, new_figure
+from rca.figures.verdict_network import network
 from rca.verdict.model import VerdictCheck
+from rca.verdict.side import HELD
 
 MECHANISMS_SHOWN = 10
+TORNADO = 8
 
 
 def figures_verdict(check: VerdictCheck) -> dict[str, Figure]:
     """Every figure of the verdict; the item figures only where there are items."""
-    drawn = {"verdict-sides": sides(check), "verdict-mechanisms": mechanisms(check)}
+    drawn = {
+        "verdict-sides": sides(check),
+        "verdict-mechanisms": mechanisms(check),
+        "verdict-network": network(check),
+    }
     if check.evidence:
+        drawn["verdict-running"] = running(check)
+        drawn["verdict-tornado"] = tornado(check)
         drawn["verdict-items"] = items(check)
         drawn["verdict-matrix"] = matrix(check)
     return drawn
@@ -167,3 +177,73 @@ def matrix(check: VerdictCheck) -> Figure:
     for side in ("left", "bottom"):
         ax.spines[side].set_visible(False)
     return figure
+
+
+def running(check: VerdictCheck) -> Figure:
+    """The two sides as one group of evidence after the other is let in."""
+    steps = check.verdict.running
+    figure, axes = new_figure(height_in=2.4)
+    ax = axes[0]
+    x = np.arange(len(steps))
+    for name, mark in (("suction", MARKS["suction"]), ("discharge", MARKS["discharge"])):
+        y = [getattr(step, name) for step in steps]
+        ax.plot(x, y, color=mark.colour, linestyle=_dash(mark), marker=mark.marker, markersize=4)
+        ax.annotate(
+            f"{name} {share(y[-1])}",
+            (x[-1], y[-1]),
+            xytext=(6, 0 if name == "suction" else -2),
+            textcoords="offset points",
+            color=mark.colour,
+            va="center"
+            if abs(steps[-1].suction - steps[-1].discharge) > 0.08
+            else ("bottom" if name == "suction" else "top"),
+        )
+    ax.axhline(HELD, color=GREY, linewidth=0.7, linestyle=(0, (3, 2)))
+    ax.text(-0.3, HELD, f"held from {HELD:.2f}", fontsize=7.5, color=GREY, va="bottom")
+    ax.set_xticks(x, ["before", *(f"+ {s.group}" for s in steps[1:])], rotation=18, ha="right")
+    ax.set_xlim(-0.35, len(steps) - 1 + 0.9)
+    ax.set_ylim(0, 1.05)
+    ax.set_ylabel("probability")
+    return figure
+
+
+def tornado(check: VerdictCheck) -> Figure:
+    """Each side with one item left out, widest first, on a scale of log odds."""
+    verdict = check.verdict
+    named = {i.id: i.node for i in check.evidence}
+    figure, axes = new_figure(height_in=2.5, columns=2)
+    for ax, side in zip(axes, ("suction", "discharge"), strict=True):
+        colour, hatch = MARKS[side].colour, "" if side == "suction" else "///"
+        now = float(logit(verdict.sides[side]))
+        rows = sorted(
+            ((str(s["without"]), float(logit(float(s[side])))) for s in verdict.sensitivity),
+            key=lambda r: -abs(r[1] - now),
+        )[:TORNADO]
+        for place, (_, x) in enumerate(rows):
+            ax.barh(
+                -place, x - now, left=now, height=0.6, color=colour, hatch=hatch,
+                edgecolor="white",
+            )  # fmt: skip
+            ax.annotate(
+                share(float(expit(x))), (x, -place), xytext=(-3 if x < now else 3, 0),
+                textcoords="offset points", ha="right" if x < now else "left", va="center",
+                fontsize=7.5,
+            )  # fmt: skip
+        ax.axvline(now, color=INK, linewidth=0.8)
+        ax.axvline(float(logit(HELD)), color=GREY, linewidth=0.7, linestyle=(0, (3, 2)))
+        ax.set_yticks([-k for k in range(len(rows))], [_short(i, named[i]) for i, _ in rows])
+        reach = [now, float(logit(HELD)), *(x for _, x in rows)]
+        low, high = min(reach) - 0.9, max(reach) + 0.6
+        ticks = [t for t in (0.01, 0.1, 0.5, 0.75, 0.9, 0.99) if low <= logit(t) <= high]
+        ax.set_xticks([float(logit(t)) for t in ticks], [f"{t:g}" for t in ticks])
+        ax.set_xlim(low, high)
+        ax.set_xlabel(f"{side}, one item left out")
+    return figure
+
+
+def _short(identity: str, node: str) -> str:
+    return f"{identity} {node if len(node) <= 24 else node[:22] + chr(0x2026)}"
+
+
+def _dash(mark: Mark) -> str | tuple[float, tuple[float, ...]]:
+    return mark.dash if isinstance(mark.dash, str) else (0.0, mark.dash)

@@ -54,6 +54,24 @@ class GroupWeight:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Step:
+    """The sides with this group and all before it; the first step has no group."""
+
+    group: str
+    suction: float
+    discharge: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Link:
+    """One arrow of the network between causes, conditions and mechanisms."""
+
+    parent: str
+    child: str
+    strength: float  # how often the parent brings the child about
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Band:
     """A probability over the draws of the knowledge's numbers."""
 
@@ -123,6 +141,8 @@ class Verdict:
     contradictions: tuple[str, ...] = ()
     order: Order | None = None  # which side showed first; asked where both took part
     without: tuple[Without, ...] = ()  # one cause taken away
+    running: tuple[Step, ...] = ()  # group after group, in the order of the groups
+    links: tuple[Link, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -10,8 +10,16 @@ from rca.evidence.item import EvidenceItem, NotAssessed
 from rca.oil.check import OilCheck
 from rca.suction.check import SuctionCheck
 from rca.verdict.explain import DULL, GROUP_CAP, explain, verbal
-from rca.verdict.knowledge import Knowledge
-from rca.verdict.model import GroupWeight, RankedCause, Verdict, VerdictCheck, WeighedItem
+from rca.verdict.knowledge import INLET, Knowledge
+from rca.verdict.model import (
+    GroupWeight,
+    Link,
+    RankedCause,
+    Step,
+    Verdict,
+    VerdictCheck,
+    WeighedItem,
+)
 from rca.verdict.next_test import next_tests
 from rca.verdict.order import order_of
 from rca.verdict.posterior import (
@@ -95,6 +103,8 @@ def weigh(
         contradictions=tuple(contradictions),
         order=order_of(suction, oil) if side == "both" else None,
         without=without_causes(suction, discharge),
+        running=_running(knowledge, items, prior),
+        links=_links(knowledge),
     )
     return VerdictCheck(
         verdict=verdict,
@@ -195,6 +205,37 @@ def _group(name: str, items: tuple[str, ...], suction: float, discharge: float) 
         discharge_ratio=float(np.clip(discharge, 1 / GROUP_CAP, GROUP_CAP)),
         capped="; ".join(told),
     )
+
+
+def _running(
+    knowledge: Knowledge, items: Sequence[EvidenceItem], prior: Posterior
+) -> tuple[Step, ...]:
+    """The sides as one group after the other is let in, in the order of their names."""
+    steps = [Step(group="", suction=float(prior.suction[0]), discharge=float(prior.discharge[0]))]
+    names = sorted({item.group.value for item in items})
+    if not names:
+        return tuple(steps)
+    later = [{i.key for i in items if i.group.value in names[n + 1 :]} for n in range(len(names))]
+    found = reported(knowledge, items, leave_out(items, later))
+    steps += [
+        Step(group=name, suction=float(found.suction[n]), discharge=float(found.discharge[n]))
+        for n, name in enumerate(names)
+    ]
+    return tuple(steps)
+
+
+def _links(knowledge: Knowledge) -> tuple[Link, ...]:
+    """The arrows between causes, conditions and mechanisms; signs are left out."""
+    found = []
+    for name, v in knowledge.variables.items():
+        if v.kind == "sign":
+            continue
+        found += [Link(parent=p, child=name, strength=n.best) for p, n in v.leaves.items()]
+        if v.needs:
+            found += [Link(parent=p, child=name, strength=v.gate["both"].best) for p in v.needs]
+        if v.given:
+            found.append(Link(parent=INLET, child=name, strength=v.given["near vapour"].best))
+    return tuple(found)
 
 
 def _sensitivity(
