@@ -13,6 +13,7 @@ import numpy.typing as npt
 from rca.base.source import Source
 from rca.case.model import Case
 from rca.case.series import AlignedRecord, Series
+from rca.physics.sample_kernels import bilinear, pool
 from rca.records.running import RUNNING_SHARE
 from rca.suction.budget import pressure_budget, pump_flow
 from rca.suction.measured import NEAR_VAPOUR
@@ -66,26 +67,14 @@ class LineTable:
         flows = np.linspace(0.0, top_flow, FLOWS)
         temperatures = np.linspace(low, high, TEMPERATURES)
         q, t = np.meshgrid(np.maximum(flows, 1e-9 * top_flow), temperatures, indexing="ij")
-        self.values = pressure_budget(case, q, t).inlet
+        self.values = np.ascontiguousarray(pressure_budget(case, q, t).inlet)
         self.per_flow = (FLOWS - 1) / top_flow
         self.per_kelvin = (TEMPERATURES - 1) / (high - low)
 
     def __call__(self, flow: FloatArray, temperature: FloatArray) -> FloatArray:
         """Inlet pressure [Pa]; NaN outside the table."""
         x, y = flow * self.per_flow, (temperature - self.low) * self.per_kelvin
-        inside = (x >= 0.0) & (x <= FLOWS - 1) & (y >= 0.0) & (y <= TEMPERATURES - 1)
-        x, y = np.where(inside, x, 0.0), np.where(inside, y, 0.0)
-        i = np.minimum(x.astype(np.int32), FLOWS - 2)
-        j = np.minimum(y.astype(np.int32), TEMPERATURES - 2)
-        x -= i
-        y -= j
-        flat = i * TEMPERATURES + j
-        table = self.values.ravel()
-        lower = table[flat] * (1.0 - y) + table[flat + 1] * y
-        upper = table[flat + TEMPERATURES] * (1.0 - y) + table[flat + TEMPERATURES + 1] * y
-        out = lower * (1.0 - x) + upper * x
-        out[~inside] = np.nan
-        return np.asarray(out)
+        return np.asarray(bilinear(self.values, x, y))
 
 
 def evaluate_blocks(
@@ -195,18 +184,14 @@ class _Bins:
         if index[0] < 0 or index[-1] >= self.number or np.any(np.diff(index) < 0):
             raise ValueError("evaluate_blocks needs rising times between start and end")
         for quantity, name in self.NAMES:
-            values = getattr(piece, name)
-            good = np.isfinite(values)
-            place, seen = (index, values) if good.all() else (index[good], values[good])
-            if not place.size:
-                continue
-            edge = np.flatnonzero(np.diff(place, prepend=place[0] - 1))
-            here = place[edge]
-            self.count[quantity][here] += np.diff(np.append(edge, place.size))
-            self.sum[quantity][here] += np.add.reduceat(seen, edge)
-            low, high = np.minimum.reduceat(seen, edge), np.maximum.reduceat(seen, edge)
-            self.low[quantity][here] = np.minimum(self.low[quantity][here], low)
-            self.high[quantity][here] = np.maximum(self.high[quantity][here], high)
+            pool(
+                index,
+                np.asarray(getattr(piece, name), dtype=np.float64),
+                self.count[quantity],
+                self.sum[quantity],
+                self.low[quantity],
+                self.high[quantity],
+            )
 
     def result(self, source: Source) -> AlignedRecord:
         series = {}
