@@ -7,7 +7,7 @@ from rca.discharge.delay import delays
 from rca.discharge.inputs import Inputs
 from rca.discharge.model import Map, Trace
 from rca.discharge.sampling import HOLD
-from rca.physics.bubble import bubble_batch, bubble_history
+from rca.physics.bubble import BubbleHistory, bubble_batch, bubble_history
 from rca.physics.collapse import rayleigh_collapse_time
 
 Floats = npt.NDArray[np.float64]
@@ -61,18 +61,21 @@ def _ignites(inputs: Inputs, radius: Floats, rise: Floats) -> npt.NDArray[np.boo
 
 
 def trace(inputs: Inputs, radius: float) -> Trace:
-    """One bubble through the machine's middle rise and a hold of as long again."""
+    """One bubble through the machine's middle rise and a hold of half as long again.
+
+    Where the rise was measured and counts, its recorded course drives the bubble, stretched to the
+    machine's own pressures; the same bubble under an even rise stands beside it.
+    """
     rise = inputs.rise.spread.p50
-    p1, p2 = inputs.inlet.value, inputs.discharge.value
-    collapse = float(rayleigh_collapse_time(radius, p1, inputs.oil.density))
-    time = np.array([0.0, rise, 2.5 * rise])
-    line = np.array([p1, p2, p2])
-    history = bubble_history(
-        radius, inputs.temperature.value, time, line, oil=inputs.oil,
-        inertial=rise < 20.0 * collapse, delays=delays(),
-    )  # fmt: skip
+    time, line = _driver(inputs)
+    history = _followed(inputs, radius, time, line)
     keep = np.unique(np.linspace(0, history.time.size - 1, TRACE_ROWS).astype(int))
     at = history.time[keep]
+    even = None
+    if inputs.rise.course:
+        p1, p2 = inputs.inlet.value, inputs.discharge.value
+        nodes = np.array([0.0, rise, 2.5 * rise])
+        even = float(_followed(inputs, radius, nodes, np.array([p1, p2, p2])).peaks.core[0])
     return Trace(
         radius_0=radius,
         rise_time=rise,
@@ -84,4 +87,27 @@ def trace(inputs: Inputs, radius: float) -> Trace:
         mean=tuple(history.mean[keep].tolist()),
         wall=tuple(history.wall[keep].tolist()),
         above_800=float(history.peaks.above[0][0]),
+        linear_core=even,
     )
+
+
+def _driver(inputs: Inputs) -> tuple[Floats, Floats]:
+    """Time [s] and line pressure [Pa abs] that drive the bubble, hold included."""
+    p1, p2 = inputs.inlet.value, inputs.discharge.value
+    if not inputs.rise.course:
+        rise = inputs.rise.spread.p50
+        return np.array([0.0, rise, 2.5 * rise]), np.array([p1, p2, p2])
+    course = np.array(inputs.rise.course)
+    # ringing below the foot or above the crest stays in, but never under half the inlet pressure
+    line = np.maximum(p1 + (p2 - p1) * course[:, 1], 0.5 * p1)
+    end = course[-1, 0]
+    return np.append(course[:, 0], 2.5 * end), np.append(line, line[-1])
+
+
+def _followed(inputs: Inputs, radius: float, time: Floats, line: Floats) -> BubbleHistory:
+    collapse = float(rayleigh_collapse_time(radius, line[0], inputs.oil.density))
+    steepest = (line[-1] - line[0]) / float(np.max(np.diff(line) / np.diff(time)))
+    return bubble_history(
+        radius, inputs.temperature.value, time, line, oil=inputs.oil,
+        inertial=steepest < 20.0 * collapse, delays=delays(),
+    )  # fmt: skip

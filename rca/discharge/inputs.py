@@ -1,6 +1,6 @@
 """The uncertain inputs of the discharge check: what the case gives, what is assumed instead."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -34,6 +34,7 @@ TRANSITION_DEGREES = {
 STATED_ANGLE_SPREAD = 0.30  # ln; relief grooves bend the rise inside the stated angle
 UNKNOWN_RISE = (0.3e-3, 20e-3)  # [s], 5 % and 95 % where the pump is not described at all
 USUAL_SPEED = (16.0, 50.0)  # [1/s], 5 % and 95 % where no speed is stated
+FEWEST_POINTS = 6  # of a recorded rise that may drive a bubble
 LARGE_RISE = 0.5  # of the discharge pressure: a burst must rise this far to show the compression
 _Z95 = 1.6448536
 
@@ -96,8 +97,14 @@ def rise_time(case: Case, discharge: Reading, bursts: "tuple[BurstFinding, ...]"
     line = _measured_rise(discharge, bursts)
     chamber = _chamber_rise(case)
     described = case.pump.transition_angle is not None or case.pump.kind is not None
-    if line is None or (described and line.spread.p50 > chamber.spread.p50):
+    if line is None:
         return chamber
+    if described and line.spread.p50 > chamber.spread.p50:
+        slower = (
+            f"{chamber.basis} (the {line.basis} takes {line.spread.p50 * 1e3:.2g} ms: that is the "
+            "line behind the pump, not its chamber)"
+        )
+        return replace(chamber, basis=slower)
     return line
 
 
@@ -118,7 +125,15 @@ def _measured_rise(discharge: Reading, bursts: "tuple[BurstFinding, ...]") -> Ri
         return None
     time, burst = min(seen, key=lambda pair: pair[0])
     words = f"fastest large rise in {burst.source.file}, {burst.rate_hz / 1e3:.0f} kHz"
-    return _rise(float(np.log(time / 0.8)), 0.25, True, words)
+    return replace(
+        _rise(float(np.log(time / 0.8)), 0.25, True, words), course=_usable_course(burst)
+    )
+
+
+def _usable_course(burst: "BurstFinding") -> tuple[tuple[float, float], ...]:
+    """The recorded course where it has enough samples to drive a bubble, else nothing."""
+    course = burst.rise_course
+    return course if len(course) >= FEWEST_POINTS else ()
 
 
 def _chamber_rise(case: Case) -> RiseTime:

@@ -66,6 +66,8 @@ class RiseTime:
     measured: bool
     log_mean: float  # of ln(rise time [s])
     log_sd: float
+    # measured course of the rise: seconds from its foot, share of the way up [-]; empty if none
+    course: tuple[tuple[float, float], ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -102,6 +104,7 @@ class Trace:
     mean: tuple[float, ...]  # [K]
     wall: tuple[float, ...]  # [K]
     above_800: float  # [s]
+    linear_core: float | None = None  # peak core of the same bubble under an even rise [K]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

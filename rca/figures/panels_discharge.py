@@ -2,7 +2,7 @@
 
 from rca.base.panel import Card, Column, FigureRef, Panel, Section, Table
 from rca.case.model import Case
-from rca.discharge.model import DischargeCheck, FuelPath, Population, Spread, Status
+from rca.discharge.model import DischargeCheck, FuelPath, Population, Spread, Status, Trace
 from rca.figures.discharge import CORE_MAP, HISTORY, INFLUENCES, SHARES
 from rca.physics.consequences import Budget
 
@@ -189,7 +189,7 @@ def _heat_figures(check: DischargeCheck) -> tuple[FigureRef, ...]:
                 name=HISTORY,
                 caption=f"History of one carried-in bubble, {one.radius_0 * 1e3:.2g} mm in radius "
                 f"at the inlet: temperatures, gas pressure (solid), line pressure (dashed), "
-                "radius.",
+                f"radius.{_measured(one)}",
                 alt=f"The core peaks at {celsius(max(one.core))}, the mean at "
                 f"{celsius(max(one.mean))}, the oil surface at {celsius(max(one.wall))}.",
             )
@@ -218,6 +218,15 @@ def _heat_figures(check: DischargeCheck) -> tuple[FigureRef, ...]:
             )
         )
     return tuple(refs)
+
+
+def _measured(one: Trace) -> str:
+    if one.linear_core is None:
+        return ""
+    return (
+        " The line pressure follows the recorded rise; an even rise of the same length would "
+        f"give a peak core of {celsius(one.linear_core)}."
+    )
 
 
 def _fuel(fuel: FuelPath) -> Panel:

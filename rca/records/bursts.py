@@ -29,6 +29,8 @@ class BurstFinding:
     rise_time: float | None  # [s], fastest 10-90 % of a large rise
     rise_size: float | None  # [SI], of that rise
     rise_resolved: bool
+    # that rise from its foot to its first crest: seconds, and share of the way up [-]
+    rise_course: tuple[tuple[float, float], ...] = ()
 
 
 def burst_finding(
@@ -65,6 +67,7 @@ def burst_finding(
         rise_time=rise,
         rise_size=size,
         rise_resolved=rate_hz >= RESOLVES,
+        rise_course=fastest_rise_course(x, rate_hz),
     )
 
 
@@ -80,21 +83,55 @@ def fastest_rise(values: FloatArray, rate_hz: float) -> tuple[float | None, floa
 
     None where the signal shows no such rise within the record.
     """
+    found = _fastest(values)
+    if found is None:
+        return None, None
+    begin, end, span = found
+    return (end - begin) / rate_hz, span
+
+
+def fastest_rise_course(
+    values: FloatArray, rate_hz: float, *, points: int = 48
+) -> tuple[tuple[float, float], ...]:
+    """The fastest rise from its foot to its first crest, at most ``points`` of it.
+
+    Rows of time [s] from the foot and share of the way from foot to crest [-], 0 first, 1 last;
+    empty where the signal shows no such rise. Foot and crest: where the signal, going out from the
+    10 % and 90 % points, turns round.
+    """
+    found = _fastest(values)
+    if found is None:
+        return ()
+    foot, crest, _ = found
+    while foot > 0 and values[foot - 1] < values[foot]:
+        foot -= 1
+    while crest + 1 < values.size and values[crest + 1] > values[crest]:
+        crest += 1
+    part = np.asarray(values[foot : crest + 1], dtype=float)
+    time = np.arange(part.size) / rate_hz
+    share = (part - part[0]) / (part[-1] - part[0])
+    at = time if part.size <= points else np.linspace(0.0, time[-1], points)
+    return tuple(zip(at.tolist(), np.interp(at, time, share).tolist(), strict=True))
+
+
+def _fastest(values: FloatArray) -> tuple[int, int, float] | None:
+    """Last sample under 10 % and first over 90 % of the fastest large rise, and the span."""
     low, high = np.quantile(values, [0.01, 0.99])
     span = float(high - low)
     if span <= 0.05 * abs(float(np.mean(values))):
-        return None, None
+        return None
     ten, ninety = low + 0.1 * span, low + 0.9 * span
     up = np.flatnonzero((values[:-1] < ninety) & (values[1:] >= ninety))
     starts = np.flatnonzero((values[:-1] < ten) & (values[1:] >= ten))
     if not up.size or not starts.size:
-        return None, None
+        return None
     places = np.searchsorted(starts, up, side="right") - 1
     good = places >= 0
     if not good.any():
-        return None, None
-    times = (up[good] - starts[places[good]] + 1) / rate_hz
-    return float(np.min(times)), span
+        return None
+    ends, begins = up[good], starts[places[good]]
+    fastest = int(np.argmin(ends - begins))
+    return int(begins[fastest]), int(ends[fastest]) + 1, span
 
 
 def _share(centred: FloatArray, rate_hz: float, frequency: float) -> float | None:

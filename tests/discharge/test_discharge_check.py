@@ -10,12 +10,14 @@ from rca.base.errors import OutOfRangeError
 from rca.base.source import Origin, Reading, Source
 from rca.case.model import Case, Pump
 from rca.case.vocabulary import FluidClass, PumpKind
+from rca.discharge.chart import trace
 from rca.discharge.check import check_discharge, high_pressure, hot_status, ignition_status
 from rca.discharge.fuel import lean_limit_temperature
 from rca.discharge.inputs import TRANSITION_DEGREES, gather, oil_side, rise_time
 from rca.discharge.model import Status
 from rca.discharge.sampling import draw, unit_points
 from rca.physics.delay_grid import delay_grid
+from rca.physics.thermal_regime import radius_at_peclet
 from rca.records.bursts import BurstFinding
 
 
@@ -164,6 +166,32 @@ def test_a_resolved_burst_wins_over_geometry(small_case):
         burst(rise_time=0.8e-3, rise_size=180e5, quantity="inlet pressure"),
     ):
         assert not rise_time(small_case, pressure, (useless,)).measured
+
+
+def test_a_slower_recorded_rise_is_the_line_s_and_says_so(small_case):
+    pressure = small_case.pump.discharge_pressure
+    rise = rise_time(small_case, pressure, (burst(rise_time=40e-3, rise_size=180e5),))
+    assert not rise.measured
+    assert "not its chamber" in rise.basis
+
+
+@pytest.mark.outside_value(
+    source="independent computation of the conduction model under a cosine ramp, 1 -> 172.25 bar, "
+    "40 degC, Pe 1: core 603 K (659 K under an even ramp)"
+)
+def test_a_recorded_course_drives_the_bubble(small_case):
+    x = np.linspace(0, 1, 41)
+    course = tuple(zip((1e-3 * x).tolist(), (0.5 - 0.5 * np.cos(np.pi * x)).tolist(), strict=True))
+    seen = burst(rise_time=0.8e-3, rise_size=180e5, rise_course=course)
+    case = replace(small_case, fluid=replace(small_case.fluid, temperature=reading(313.15, "K")))
+    inputs = gather(case, (1e5, 0.0), reading(172.25e5), (seen,))
+    assert inputs.rise.course == course
+    one = trace(inputs, radius_at_peclet(1.0, 1e-3, 313.15, 1e5))
+    assert max(one.core) == pytest.approx(603, abs=0.03 * 932)
+    assert one.linear_core == pytest.approx(659, abs=0.03 * 932)
+    # too few samples on the way up: an even rise
+    few = replace(seen, rise_course=course[::10])
+    assert gather(case, (1e5, 0.0), reading(172.25e5), (few,)).rise.course == ()
 
 
 def test_high_pressure(small_case):

@@ -11,7 +11,7 @@ from rca.case.model import Case
 from rca.case.series import AlignedRecord, FloatArray, Series
 from rca.evidence.from_records import from_records
 from rca.evidence.item import EvidenceItem, NotAssessed
-from rca.records.bursts import burst_finding, fastest_rise
+from rca.records.bursts import burst_finding, fastest_rise, fastest_rise_course
 from rca.records.check import RecordCheck, check_records, usable
 
 SOURCE = Source(file="made.csv", locator="made")
@@ -108,6 +108,11 @@ def test_rise_time_of_a_first_order_step() -> None:
     rise, size = fastest_rise(values, rate)
     assert rise == pytest.approx(tau * np.log(9), rel=0.02)
     assert size == pytest.approx(200e5, rel=0.02)
+    course = np.array(fastest_rise_course(values, rate))
+    assert course[0].tolist() == [0.0, 0.0]
+    assert course[-1, 1] == 1.0
+    there = np.interp(tau, course[:, 0], course[:, 1])
+    assert there == pytest.approx(1 - np.exp(-1), abs=0.05)  # thinned to 48 points of a second
 
 
 @pytest.mark.outside_value(source="a sine: crest sqrt 2, kurtosis 3/2, exact")
