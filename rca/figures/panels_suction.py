@@ -4,7 +4,7 @@ from rca.base.panel import Card, Column, FigureRef, Panel, Section, Table
 from rca.case.model import Case
 from rca.figures.numbers import bar, celsius, share, with_u
 from rca.figures.panels_suction_inverse import panels_inverse
-from rca.suction.check import InletState, SuctionCheck
+from rca.suction.check import InletState, SuctionCheck, transducer_error
 from rca.suction.measured import MeasuredInlet, Regime
 from rca.suction.tornado import COLDEST
 
@@ -193,6 +193,13 @@ def _measured(check: SuctionCheck, measured: MeasuredInlet) -> Panel:
         notes.append(
             f"At standstill the transducer reads {bar(measured.offset, digits=3)} bar against "
             "air and head; its uncertainty is taken from that."
+        )
+    error = transducer_error(check)
+    if error is not None:
+        notes.append(
+            f"At the end of the record the transducer reads {bar(abs(error.p50))} bar too "
+            f"{'low' if error.p50 > 0 else 'high'} ({bar(error.p05)} to {bar(error.p95)} bar, "
+            "low counted positive); the evidence uses the corrected pressure."
         )
     if measured.drift_per_week is not None:
         notes.append(

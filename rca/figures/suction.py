@@ -1,6 +1,7 @@
 """Figures of the suction side: the budget as a waterfall, the measured inlet in time."""
 
 import numpy as np
+import numpy.typing as npt
 from matplotlib.axes import Axes
 from matplotlib.dates import AutoDateLocator, ConciseDateFormatter
 from matplotlib.figure import Figure
@@ -9,11 +10,14 @@ from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.figures.style import DISCHARGE, GREY, PALE, SUCTION, limit_line, new_figure
 from rca.figures.suction_inverse import figures_inverse
+from rca.physics.viscosity import kinematic_viscosity
 from rca.records.running import running_bins
-from rca.suction.budget import pressure_budget
+from rca.suction.budget import fluid_viscosities, pressure_budget
 from rca.suction.check import SuctionCheck
 from rca.suction.explanations import Explanation
+from rca.suction.rows import STARVED
 
+FloatArray = npt.NDArray[np.float64]
 MOST_DOTS = 6000
 _IN_THE_LINE = {
     Explanation.CLOGGED_STRAINER: "viscosity",
@@ -211,12 +215,35 @@ def inlet_against_temperature(
         ha="right",
         color=SUCTION,
     )
+    _as_found(ax, case, check, t)
     ax.set_ylim(0, max(1.15, float(np.nanmax(p)) + 0.1))
     if check.limit is not None:
         limit_line(ax, check.limit / 1e5, "lowest allowed", colour=DISCHARGE)
     ax.set_xlabel("oil temperature [\u00b0C]")
     ax.set_ylabel("inlet pressure [bar(a)]")
     return figure
+
+
+def _as_found(ax: Axes, case: Case, check: SuctionCheck, t: FloatArray) -> None:
+    """The line with the resistances of the end of the record, down to where the pump starves."""
+    viscosities = fluid_viscosities(case)
+    if check.inverse is None or not check.counterfactuals or viscosities is None:
+        return
+    viscous = check.inverse.viscous.p50[-1]
+    ratio = kinematic_viscosity(t, *viscosities) / check.inverse.reference_viscosity
+    found = (check.counterfactuals[0].before.p50 - viscous * (ratio - 1.0)) / 1e5
+    held = found > STARVED / 1e5
+    if not held.any():
+        return
+    ax.plot(t[held] - 273.15, found[held], color=DISCHARGE, linestyle=(0, (5, 1.5)))
+    place = np.flatnonzero(held)[int(0.12 * held.sum())]
+    ax.annotate(
+        "as found at the end",
+        (t[place] - 273.15, found[place]),
+        xytext=(8, -8),
+        textcoords="offset points",
+        color=DISCHARGE,
+    )
 
 
 def _recorded(ax: Axes, case: Case, aligned: AlignedRecord) -> None:
