@@ -192,7 +192,12 @@ class Investigation:
         Raises CaseError where one can't be read.
         """
         reading = _without_errors(
-            read_records(self.folder, self.case, atmosphere=local_atmosphere(self.case))
+            read_records(
+                self.folder,
+                self.case,
+                atmosphere=local_atmosphere(self.case),
+                limit=inlet_limit(self.case)[0],
+            )
         )
         if reading.aligned is not None:
             self.store.write_aligned(usable(self.case, reading.aligned))

@@ -29,6 +29,15 @@ class Series:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Spell:
+    """A run of raw samples below a limit, finer than the bins of the record."""
+
+    start_s: float  # seconds since 1970-01-01 UTC
+    duration_s: float
+    lowest: float  # SI
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class AlignedRecord:
     """All slow channels on one time base of equal bins.
 

@@ -1,12 +1,13 @@
 """What the records show: sensors, low-pressure events, duty, rise time of the pressure."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
 
 from rca.case.model import Case
-from rca.case.series import AlignedRecord, FloatArray, Series
+from rca.case.series import AlignedRecord, FloatArray, Series, Spell
 from rca.case.site import local_atmosphere
 from rca.records.bursts import BurstFinding
 from rca.records.running import running_bins, standing_bins
@@ -98,8 +99,12 @@ def check_records(
     bursts: tuple[BurstFinding, ...],
     *,
     limit: float | None,
+    spells: Sequence[Spell] | None = None,
 ) -> RecordCheck:
-    """Judge the records; ``limit`` [Pa] is the lowest allowed inlet pressure."""
+    """Judge the records; ``limit`` [Pa] is the lowest allowed inlet pressure.
+
+    ``spells`` are runs of raw samples below it, finer than the bins; without them the bins count.
+    """
     if aligned is None:
         return RecordCheck(
             limit=limit,
@@ -115,7 +120,11 @@ def check_records(
         )
     running = running_bins(case, aligned)
     cold = _cold(case, aligned)
-    events = _events(aligned, running, cold, limit)
+    events = (
+        _of_bins(aligned, running, cold, limit)
+        if spells is None
+        else _of_spells(aligned, running, cold, spells)
+    )
     hours = sum(e.duration_s for e in events) / 3600.0
     kept = sorted(sorted(events, key=lambda e: -e.duration_s)[:LONGEST_LIST], key=_start)
     return RecordCheck(
@@ -162,7 +171,36 @@ def _cold(case: Case, aligned: AlignedRecord) -> Mask | None:
     return np.nan_to_num(temperature.mean, nan=1e3) < case.fluid.temperature.value - COLD_BELOW
 
 
-def _events(
+def _of_spells(
+    aligned: AlignedRecord, running: Mask, cold: Mask | None, spells: Sequence[Spell]
+) -> list[LowEvent]:
+    """Spells while the pump ran; its state is that of the bins they fall into."""
+    if aligned.get("inlet pressure") is None or not spells:
+        return []
+    origin = aligned.time_s[0] - aligned.bin_s / 2
+    last = aligned.time_s.size - 1
+    events = []
+    for spell in spells:
+        first = int(np.clip((spell.start_s - origin) // aligned.bin_s, 0, last))
+        end = spell.start_s + spell.duration_s - origin
+        after = int(np.clip(np.ceil(end / aligned.bin_s), first + 1, last + 1))
+        block = slice(first, after)
+        if not running[block].any():
+            continue
+        events.append(
+            LowEvent(
+                start_s=spell.start_s,
+                duration_s=spell.duration_s,
+                lowest=spell.lowest,
+                temperature=_middle(aligned.get("oil temperature"), block),
+                speed=_middle(aligned.get("shaft speed"), block),
+                cold=bool(np.mean(cold[block]) > 0.5) if cold is not None else False,
+            )
+        )
+    return events
+
+
+def _of_bins(
     aligned: AlignedRecord, running: Mask, cold: Mask | None, limit: float | None
 ) -> list[LowEvent]:
     inlet = aligned.get("inlet pressure")

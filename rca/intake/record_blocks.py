@@ -1,0 +1,345 @@
+"""A record file as blocks of stamps and numbers, whatever wrote it: CSV or Parquet."""
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from io import BytesIO
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from typing import TYPE_CHECKING
+
+import numpy as np
+import numpy.typing as npt
+
+from rca.base.errors import Problem, Severity
+from rca.case.model import RecordFile
+from rca.intake.record_time import NUMERIC, choose_format, read_stamps
+from rca.intake.words import nearest
+
+if TYPE_CHECKING:
+    import polars as pl
+
+FloatArray = npt.NDArray[np.float64]
+BLOCK_ROWS = 250_000
+HEAD_ROWS = 2000
+TAIL_BYTES = 200_000
+WIDE_MARKS = {b"\xff\xfe": "utf-16-le", b"\xfe\xff": "utf-16-be"}
+
+
+class RecordError(ValueError):
+    """A record can't be read; carries the problem."""
+
+    def __init__(self, problem: Problem) -> None:
+        self.problem = problem
+        super().__init__(str(problem))
+
+
+@dataclass(frozen=True, slots=True)
+class Block:
+    """Some rows in the file's order: seconds since 1970 UTC and values in the file's units."""
+
+    stamps: FloatArray  # NaN where unreadable
+    columns: dict[str, FloatArray]  # by column name
+    bad_cells: dict[str, int]
+
+
+@dataclass(frozen=True, slots=True)
+class OpenRecord:
+    """A file whose columns and time format are settled."""
+
+    record: RecordFile
+    path: Path
+    parquet: bool
+    separator: str
+    title_lines: int
+    form: str  # of the time stamps
+    rival: str  # another form that reads the stamps as well
+    clean: tuple[str, ...]  # columns whose sampled cells are plain numbers
+    rows: int | None  # known only where there is no time column
+
+    @property
+    def columns(self) -> tuple[str, ...]:
+        """The columns of the channels."""
+        return tuple(dict.fromkeys(c.column for c in self.record.channels))
+
+
+@contextmanager
+def opened(folder: Path, record: RecordFile) -> Iterator[OpenRecord]:
+    """The file, ready to be read in blocks; UTF-16 is written anew as UTF-8 for the time being.
+
+    Raises RecordError for an empty or unreadable file and for a missing column.
+    """
+    path = folder / record.file
+    try:
+        with path.open("rb") as stream:
+            magic = stream.read(4)
+    except OSError as error:
+        raise record_error(
+            record, f"a file that can't be read ({error.strerror})", "CSV or Parquet", "Copy it."
+        ) from error
+    if not magic:
+        raise record_error(record, "an empty file", "a header row and samples", "Export it again.")
+    with TemporaryDirectory() as scratch:
+        if magic[:2] in WIDE_MARKS:
+            path = _as_utf8(path, Path(scratch) / "record.csv")
+        yield _settled(record, path, parquet=magic == b"PAR1")
+
+
+def blocks(file: OpenRecord) -> Iterator[Block]:
+    """All rows, at most ``BLOCK_ROWS`` at a time.
+
+    Columns that looked clean are parsed as numbers by the reader itself; where that fails, the
+    caller starts over with ``slowly``. Raises polars' errors, and RecordError for naive stamps
+    without a zone.
+    """
+    yield from _read(file, frozenset(file.clean))
+
+
+def slowly(file: OpenRecord) -> Iterator[Block]:
+    """All rows with every cell looked at as text.
+
+    Raises RecordError where the rows can't be read at all.
+    """
+    import polars as pl  # noqa: PLC0415  its thread pool must not exist before a fork
+
+    try:
+        yield from _read(file, frozenset())
+    except pl.exceptions.PolarsError as error:
+        raise record_error(
+            file.record,
+            f"rows that can't be read ({error})",
+            "one format throughout",
+            "Look at the rows near the end of the file.",
+        ) from error
+
+
+def ends(file: OpenRecord) -> tuple[FloatArray, FloatArray]:
+    """Stamps of the first and the last rows, as far as they can be read."""
+    if file.rows is not None:
+        first = _counted(file.record, 0, min(file.rows, HEAD_ROWS))
+        return first, _counted(
+            file.record, max(file.rows - HEAD_ROWS, 0), min(file.rows, HEAD_ROWS)
+        )
+    column = file.record.time.column
+    head, tail = (_times(file, frame.get_column(column)) for frame in _head_and_tail(file))
+    return head[np.isfinite(head)], tail[np.isfinite(tail)]
+
+
+def record_error(record: RecordFile, found: str, expected: str, mend: str) -> RecordError:
+    """An error of that record."""
+    return RecordError(
+        Problem(
+            severity=Severity.ERROR,
+            file=record.file,
+            place="",
+            found=found,
+            expected=expected,
+            mend=mend,
+        )
+    )
+
+
+def _settled(record: RecordFile, path: Path, *, parquet: bool) -> OpenRecord:
+    import polars as pl  # noqa: PLC0415
+
+    wanted = [c.column for c in record.channels]
+    wanted += [record.time.column] if record.time.column else []
+    separator, lines = (",", 0) if parquet else _separator(path, wanted)
+    bare = OpenRecord(record, path, parquet, separator, lines, "", "", (), None)
+    try:
+        names = _lazy(bare, frozenset()).collect_schema().names()
+    except (pl.exceptions.PolarsError, OSError) as error:
+        raise record_error(
+            record, f"a file that can't be read ({error})", "CSV or Parquet", "Export it again."
+        ) from error
+    for column in wanted:
+        if column not in names:
+            near = nearest(column, names, most=1)
+            raise record_error(
+                record,
+                f"no column {column!r}",
+                f"one of {', '.join(names[:40])}",
+                (f"Did you mean {near[0]!r}? " if near else "")
+                + "Mend the column name in case.toml; capitals and spaces count.",
+            )
+    head, tail = _head_and_tail(bare)
+    clean = tuple(c for c in bare.columns if _is_clean(head, c) and _is_clean(tail, c))
+    form, rival = _time_format(bare, head)
+    rows = None
+    if not record.time.column:
+        rows = int(_lazy(bare, frozenset()).select(pl.len()).collect().item())
+    return OpenRecord(record, path, parquet, separator, lines, form, rival, clean, rows)
+
+
+def _lazy(file: OpenRecord, typed: frozenset[str]) -> "pl.LazyFrame":
+    import polars as pl  # noqa: PLC0415
+
+    if file.parquet:
+        lazy = pl.scan_parquet(file.path)
+        return lazy.rename({name: name.strip() for name in lazy.collect_schema().names()})
+    raw = _scan(file, {}).collect_schema().names()
+    numeric = {name: pl.Float64 for name in raw if name.strip() in typed}
+    return _scan(file, numeric).rename({name: name.strip() for name in raw})
+
+
+def _scan(file: OpenRecord, numeric: dict[str, type["pl.Float64"]]) -> "pl.LazyFrame":
+    import polars as pl  # noqa: PLC0415
+
+    return pl.scan_csv(
+        file.path,
+        separator=file.separator,
+        skip_lines=file.title_lines,
+        infer_schema=False,
+        schema_overrides=numeric,
+        truncate_ragged_lines=True,
+        encoding="utf8-lossy",
+    )
+
+
+def _read(file: OpenRecord, typed: frozenset[str]) -> Iterator[Block]:
+    column = file.record.time.column
+    wanted = [*file.columns, *([column] if column and column not in file.columns else [])]
+    seen = 0
+    frames = (
+        _lazy(file, typed)
+        .select(wanted)
+        .collect_batches(chunk_size=BLOCK_ROWS, maintain_order=True, engine="streaming")
+    )
+    for frame in frames:
+        stamps = (
+            _times(file, frame.get_column(column))
+            if column
+            else _counted(file.record, seen, frame.height)
+        )
+        seen += frame.height
+        values, bad = {}, {}
+        for name in file.columns:
+            values[name], bad[name] = numbers(frame.get_column(name))
+        yield Block(stamps, values, bad)
+
+
+def numbers(series: "pl.Series") -> tuple[FloatArray, int]:
+    """Values as floats, and how many cells hold something that is no number."""
+    import polars as pl  # noqa: PLC0415
+
+    if series.dtype.is_numeric():
+        filled = series.cast(pl.Float64).fill_null(float("nan"))
+        return np.asarray(filled.to_numpy(), dtype=float), 0
+    found = series.cast(pl.Float64, strict=False)
+    bad = 0
+    if found.null_count():
+        text = series.cast(pl.String).str.strip_chars()
+        if bool(text.str.contains(r"^-?\d+,\d+$").fill_null(value=False).any()):
+            text = text.str.replace(",", ".", literal=True)
+        found = text.cast(pl.Float64, strict=False)
+        blank = text.is_null() | (text == "")
+        bad = int((found.is_null() & ~blank.fill_null(value=True)).sum())
+    return np.asarray(found.fill_null(float("nan")).to_numpy(), dtype=float), bad
+
+
+def _times(file: OpenRecord, column: "pl.Series") -> FloatArray:
+    """Seconds since 1970 UTC, NaN where a stamp can't be read."""
+
+    def complain() -> Exception:
+        return record_error(
+            file.record,
+            "stamps without a zone",
+            "a zone",
+            'Add it:  time = { column = "...", zone = "Europe/Vienna" }',
+        )
+
+    return read_stamps(column, file.form, file.record.time.zone, complain=complain)
+
+
+def _counted(record: RecordFile, before: int, rows: int) -> FloatArray:
+    axis = record.time
+    assert axis.start is not None  # a record has a time column or a start and a rate
+    assert axis.rate_hz is not None
+    return np.asarray(axis.start.timestamp() + (before + np.arange(rows)) / axis.rate_hz)
+
+
+def _head_and_tail(file: OpenRecord) -> tuple["pl.DataFrame", "pl.DataFrame"]:
+    """The first and the last rows; as text where the file is text."""
+    import polars as pl  # noqa: PLC0415
+
+    lazy = _lazy(file, frozenset())
+    head = lazy.head(HEAD_ROWS).collect()
+    if file.parquet:
+        return head, lazy.tail(HEAD_ROWS).collect()
+    size = file.path.stat().st_size
+    if size <= 2 * TAIL_BYTES:
+        return head, lazy.tail(HEAD_ROWS).collect()
+    with file.path.open("rb") as stream:
+        for _ in range(file.title_lines):
+            stream.readline()
+        header = stream.readline()
+        stream.seek(-TAIL_BYTES, 2)
+        stream.readline()  # the rest of a cut line
+        tail = stream.read()
+    frame = pl.read_csv(
+        BytesIO(header + tail),
+        separator=file.separator,
+        infer_schema=False,
+        truncate_ragged_lines=True,
+        encoding="utf8-lossy",
+    )
+    return head, frame.rename({name: name.strip() for name in frame.columns})
+
+
+def _is_clean(frame: "pl.DataFrame", column: str) -> bool:
+    import polars as pl  # noqa: PLC0415
+
+    cells = frame.get_column(column)
+    if cells.dtype != pl.String:
+        return True
+    return cells.cast(pl.Float64, strict=False).null_count() == cells.null_count()
+
+
+def _separator(path: Path, wanted: list[str]) -> tuple[str, int]:
+    """The delimiter, and how many title lines stand above the header."""
+    with path.open("rb") as stream:
+        head = stream.read(20_000).decode("utf-8-sig", errors="replace").splitlines()[:60]
+    for number, line in enumerate(head):
+        for delimiter in ";\t,":
+            names = [cell.strip().strip('"').strip() for cell in line.split(delimiter)]
+            if len(names) > 1 and all(column in names for column in wanted):
+                return delimiter, number
+    return max(";\t,", key=lambda d: min((line.count(d) for line in head[:10]), default=0)), 0
+
+
+def _time_format(file: OpenRecord, head: "pl.DataFrame") -> tuple[str, str]:
+    """The format of the time column, and a tied rival.
+
+    Most are settled by the first rows; day-first and month-first are told apart by stamps spread
+    over the whole file.
+    """
+    import polars as pl  # noqa: PLC0415
+
+    name = file.record.time.column
+    if not name or head.get_column(name).dtype != pl.String:
+        return "", ""
+    first = choose_format(head.get_column(name))
+    if first[0] == NUMERIC or (first[0] and not first[0].startswith(("%d/", "%m/"))):
+        return first
+    parts: list[pl.Series] = []
+    for frame in (
+        _lazy(file, frozenset())
+        .select(name)
+        .collect_batches(chunk_size=BLOCK_ROWS, maintain_order=True, engine="streaming")
+    ):
+        column = frame.get_column(name)
+        parts += [column.head(100), column.gather_every(max(1, frame.height // 200))]
+    return choose_format(pl.concat(parts)) if parts else ("", "")
+
+
+def _as_utf8(path: Path, target: Path) -> Path:
+    with path.open("rb") as stream:
+        encoding = WIDE_MARKS[stream.read(2)]
+    with (
+        path.open(encoding=encoding, errors="replace", newline="") as wide,
+        target.open("w", encoding="utf-8", newline="") as narrow,
+    ):
+        wide.read(1)  # the byte order mark
+        while part := wide.read(1_000_000):
+            narrow.write(part)
+    return target
