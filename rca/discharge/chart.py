@@ -14,7 +14,8 @@ Floats = npt.NDArray[np.float64]
 
 RADII = (0.02e-3, 5e-3)  # [m]
 RISES = (0.03e-3, 30e-3)  # [s]
-TRACE_ROWS = 160
+TRACE_ROWS = 240
+NODES = 101  # of the driving pressure: the history is drawn no coarser; a multiple of the rise
 
 
 def core_map(inputs: Inputs, *, columns: int = 40, rows: int = 24) -> Map:
@@ -96,12 +97,14 @@ def _driver(inputs: Inputs) -> tuple[Floats, Floats]:
     p1, p2 = inputs.inlet.value, inputs.discharge.value
     if not inputs.rise.course:
         rise = inputs.rise.spread.p50
-        return np.array([0.0, rise, 2.5 * rise]), np.array([p1, p2, p2])
+        time = np.linspace(0.0, 2.5 * rise, NODES)
+        return time, np.interp(time, [0.0, rise], [p1, p2])
     course = np.array(inputs.rise.course)
     # ringing below the foot or above the crest stays in, but never under half the inlet pressure
     line = np.maximum(p1 + (p2 - p1) * course[:, 1], 0.5 * p1)
     end = course[-1, 0]
-    return np.append(course[:, 0], 2.5 * end), np.append(line, line[-1])
+    hold = np.linspace(end, 2.5 * end, NODES // 2)[1:]
+    return np.append(course[:, 0], hold), np.append(line, np.full(hold.size, line[-1]))
 
 
 def _followed(inputs: Inputs, radius: float, time: Floats, line: Floats) -> BubbleHistory:

@@ -15,7 +15,7 @@ CORE_MAP = "discharge-core-map"
 HISTORY = "discharge-bubble-history"
 INFLUENCES = "discharge-influences"
 SHARES = "discharge-bands"
-_LEVELS = (400.0, 600.0, 800.0, 1000.0, 1200.0)  # [K]
+_LEVELS = (473.15, 673.15, 873.15, 1073.15, 1273.15)  # [K], 200 to 1000 degC
 _COLOUR = {"released air": SUCTION, "carried-in air": DISCHARGE}
 _DASH: dict[str, object] = {"released air": "-", "carried-in air": (0, (5, 1.5))}
 
@@ -115,6 +115,7 @@ def _region(
         xytext=(0, -5) if first else (6, 4), textcoords="offset points",
         ha="center" if first else "left", va="top" if first else "bottom", fontsize=8,
         color=colour,
+        bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.6, "alpha": 0.75},
     )  # fmt: skip
 
 
@@ -147,6 +148,9 @@ def bubble_history(check: DischargeCheck) -> Figure:
     upper.set(ylabel="temperature, °C", ylim=(0, None))
     lower.plot(time, np.array(one.pressure) / 1e5, color=INK)
     lower.plot(time, np.array(one.line) / 1e5, color=GREY, linestyle=(0, (4, 2)), linewidth=0.9)
+    lower.annotate("gas (solid), line (dashed)", (time[-1], one.pressure[-1] / 1e5),
+                   xytext=(-4, -3), textcoords="offset points", ha="right", va="top",
+                   fontsize=7.5)  # fmt: skip
     lower.set(ylabel="pressure, bar (a)", xlabel="time, ms")
     twin = lower.twinx()
     twin.plot(time, np.array(one.radius) * 1e6, color=SUCTION, linestyle=(0, (5, 1.5)))
@@ -185,7 +189,7 @@ def bands(check: DischargeCheck) -> Figure:
 
 
 def influences(check: DischargeCheck) -> Figure:
-    """What moves the peak core temperature: its median in the lowest and highest fifth."""
+    """What moves the peak core temperature: one input at a time, and its share by rank."""
     figure, (axes,) = new_figure(height_in=1.9)
     rows = check.influences[::-1]
     for place, row in enumerate(rows):
@@ -193,11 +197,14 @@ def influences(check: DischargeCheck) -> Figure:
         axes.plot([low, high], [place, place], color=GREY, linewidth=4, solid_capstyle="butt")
         axes.plot(low, place, "o", color=SUCTION, markersize=5)
         axes.plot(high, place, "s", color=DISCHARGE, markersize=5)
+        axes.annotate(f"{row.share:.0%}", (1.01, place), xycoords=("axes fraction", "data"),
+                      va="center", fontsize=7.5, color=INK)  # fmt: skip
     axes.set_yticks(range(len(rows)), [row.name for row in rows])
     axes.set(xlabel="peak core temperature of a middling carried-in bubble, °C",
              ylim=(-0.6, len(rows) - 0.4))  # fmt: skip
-    axes.annotate("● input at its 5 % point   ■ at its 95 % point", (1, 1),
+    axes.annotate("● input at its 5 % point   ■ at its 95 % point", (0.9, 1),
                   xycoords="axes fraction", ha="right", va="bottom", fontsize=7.5)  # fmt: skip
+    axes.annotate("explains", (1.01, 1), xycoords="axes fraction", va="bottom", fontsize=7.5)
     return figure
 
 

@@ -2,6 +2,7 @@
 
 from rca.base.panel import Card, Column, FigureRef, Panel, Section, Table
 from rca.case.model import Case
+from rca.discharge.delay import PUBLISHED_TO, delay_table
 from rca.discharge.model import DischargeCheck, FuelPath, Population, Spread, Status, Trace
 from rca.figures.discharge import CORE_MAP, HISTORY, INFLUENCES, SHARES
 from rca.physics.consequences import Budget
@@ -113,11 +114,27 @@ def _heat(check: DischargeCheck) -> Panel:
             *_beyond(check.populations),
             "Bubble sizes are the usual ranges for air out of solution and for air carried in; "
             "nobody measured them in this pump.",
-            "Ignition delay of stoichiometric n-dodecane vapour (Wang, Ra, Jia, Reitz, Fuel 136, "
-            "2014), extrapolated above about 60 bar; evaporation and mixing would lengthen it.",
+            _delay_words(check),
             "Thermally possible: 1.5 times the critical radius or more; excluded: under 0.5.",
         ),
         card=HEAT_CARD,
+    )
+
+
+def _delay_words(check: DischargeCheck) -> str:
+    table, pressure = delay_table(), check.discharge_pressure
+    bar = pressure.value / 1e5 if pressure is not None else 0.0
+    beyond = (
+        f"published experiments end near {PUBLISHED_TO / 1e5:.0f} bar, so at this machine's "
+        f"{bar:.0f} bar absolute it is an extrapolation"
+        if bar > PUBLISHED_TO / 1e5
+        else "within the pressures of published experiments"
+    )
+    return (
+        f"Ignition delay of stoichiometric n-dodecane vapour, tabulated with {table.library} and "
+        f"the mechanism {table.mechanism}: {beyond}. A mixture half as rich ignites up to three "
+        "times later, one twice as rich up to twice as soon; evaporation and mixing lengthen the "
+        "delay."
     )
 
 
@@ -213,7 +230,7 @@ def _heat_figures(check: DischargeCheck) -> tuple[FigureRef, ...]:
             FigureRef(
                 name=INFLUENCES,
                 caption="Peak core temperature with one input at its 5 % and 95 % point and all "
-                "others at their middle.",
+                "others at their middle; right, the share of its scatter that the input explains.",
                 alt=f"{first.name} matters most: {celsius(first.low)} to {celsius(first.high)}.",
             )
         )
