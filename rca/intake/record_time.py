@@ -6,6 +6,7 @@ the reading under which fewer fail, then the one that runs on more evenly.
 """
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo
@@ -24,6 +25,37 @@ FORMATS = tuple(
     for day in ("%Y-%m-%d ", "%Y-%m-%dT", "%d.%m.%Y ", "%Y/%m/%d ", "%d/%m/%Y ", "%m/%d/%Y ")
     for clock in ("%H:%M:%S%.f", "%H:%M", "%I:%M:%S %p")
 )
+
+
+WHOLE_SECONDS = 19  # characters of a stamp of whole seconds
+
+
+@dataclass(frozen=True, slots=True)
+class _Places:
+    """Where year, month, day, hour, minute and second stand in a stamp of fixed width."""
+
+    pattern: str
+    parts: tuple[range, ...]
+
+    @property
+    def digits(self) -> tuple[int, ...]:
+        """All places of digits, in the order of the parts."""
+        return tuple(k for part in self.parts for k in part)
+
+
+def _places(pattern: str) -> _Places:
+    spans = {letter: [k for k, c in enumerate(pattern) if c == letter] for letter in "YmdHMS"}
+    return _Places(pattern, tuple(range(s[0], s[-1] + 1) for s in spans.values()))
+
+
+_PLACES = {
+    "%Y-%m-%d %H:%M:%S": _places("YYYY-mm-dd HH:MM:SS"),
+    "%Y-%m-%dT%H:%M:%S": _places("YYYY-mm-ddTHH:MM:SS"),
+    "%Y/%m/%d %H:%M:%S": _places("YYYY/mm/dd HH:MM:SS"),
+    "%d.%m.%Y %H:%M:%S": _places("dd.mm.YYYY HH:MM:SS"),
+    "%d/%m/%Y %H:%M:%S": _places("dd/mm/YYYY HH:MM:SS"),
+    "%m/%d/%Y %H:%M:%S": _places("mm/dd/YYYY HH:MM:SS"),
+}
 
 
 def choose_format(sample: "pl.Series") -> tuple[str, str]:
@@ -77,9 +109,54 @@ def read_stamps(
         return _seconds(text.str.to_datetime(strict=False, time_unit="us", time_zone="UTC"))
     if not form:
         return np.full(len(column), np.nan)
+    quick = fixed_width(text, form)
+    if quick is not None:
+        return _in_zone(quick, zone, complain)
     return _in_zone(
         _seconds(text.str.to_datetime(form, strict=False, time_unit="us")), zone, complain
     )
+
+
+def fixed_width(text: "pl.Series", form: str) -> FloatArray | None:
+    """Seconds since 1970 of stamps all of one length, digit by digit; some ten times faster.
+
+    None where the form is not one of whole seconds with zero-filled numbers, or where any stamp
+    is not what the form says: the general reading then looks at every one.
+    """
+    places = _PLACES.get(form.removesuffix("%.f"))
+    if places is None or not len(text) or text.null_count():
+        return None
+    length = int(text.str.len_bytes().max() or 0)  # type: ignore[arg-type]
+    if length < WHOLE_SECONDS or length != text.str.len_bytes().min():
+        return None
+    raw = np.frombuffer(str(text.str.join("").item()).encode(), dtype=np.uint8)
+    digits = raw.reshape(-1, length).astype(np.int32) - ord("0")
+    marks = [k for k in range(length) if k not in places.digits and k < WHOLE_SECONDS]
+    fraction = list(range(WHOLE_SECONDS + 1, length))
+    told = digits[:, [*places.digits, *fraction]]
+    if (told < 0).any() or (told > 9).any():
+        return None
+    if any((digits[:, k] + ord("0") != ord(places.pattern[k])).any() for k in marks):
+        return None
+    if length > WHOLE_SECONDS and (digits[:, WHOLE_SECONDS] + ord("0") != ord(".")).any():
+        return None
+    year, month, day, hour, minute, second = (
+        digits[:, list(part)] @ np.array([10 ** (len(part) - 1 - k) for k in range(len(part))])
+        for part in places.parts
+    )
+    within = (month >= 1) & (month <= 12) & (day >= 1) & (hour < 24) & (minute < 60)
+    if not (within & (second < 60)).all():
+        return None
+    months = ((year - 1970) * 12 + month - 1).astype("datetime64[M]")
+    first = months.astype("datetime64[D]").astype(np.int64)
+    after = (months + 1).astype("datetime64[D]").astype(np.int64)
+    if (day > after - first).any():
+        return None
+    days = first + day - 1
+    seconds = (days * 86400 + hour * 3600 + minute * 60 + second).astype(float)
+    for k, place in enumerate(fraction, start=1):
+        seconds += digits[:, place] * 10.0**-k
+    return np.asarray(seconds)
 
 
 def from_epoch(values: FloatArray) -> FloatArray:

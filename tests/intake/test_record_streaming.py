@@ -4,12 +4,16 @@ from datetime import UTC, datetime
 from pathlib import Path
 
 import numpy as np
+import polars as pl
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from rca.base.source import Source
 from rca.case.model import Case, Channel, Header, RecordFile, TimeAxis
 from rca.intake import record_blocks
 from rca.intake.record_files import RecordReading, read_records
+from rca.intake.record_time import fixed_width
 
 CHANNEL = Channel(column="P", quantity="inlet pressure", unit="bar(a)")
 NOON = datetime(2026, 1, 5, 12, 0, tzinfo=UTC).timestamp()
@@ -121,3 +125,39 @@ def test_encodings(tmp_path: Path, encoding: str) -> None:
 def test_a_wrong_column_is_answered_with_the_nearest(tmp_path: Path) -> None:
     reading = read(tmp_path, rows({}, 50).replace("t,P", "t,P1"))
     assert "Did you mean 'P1'?" in reading.problems[0].mend
+
+
+@pytest.mark.parametrize(
+    "form", ["%Y-%m-%d %H:%M:%S", "%Y-%m-%dT%H:%M:%S", "%d.%m.%Y %H:%M:%S", "%m/%d/%Y %H:%M:%S"]
+)
+@given(
+    stamps=st.lists(
+        st.datetimes(datetime(1905, 1, 1), datetime(2190, 1, 1)),
+        min_size=1,
+        max_size=30,
+    ),
+    digits=st.integers(0, 6),
+)
+def test_stamps_read_by_digits_are_those_of_the_calendar(
+    form: str, stamps: list[datetime], digits: int
+) -> None:
+    """Against the standard library's own calendar."""
+    whole = [
+        s.replace(microsecond=s.microsecond // 10 ** (6 - digits) * 10 ** (6 - digits))
+        for s in stamps
+    ]
+    part = [f".{s.microsecond:06d}"[: digits + 1] if digits else "" for s in whole]
+    text = pl.Series(
+        [s.strftime(form).rjust(19, "0") + p for s, p in zip(whole, part, strict=True)]
+    )
+    found = fixed_width(text, form + "%.f")
+    assert found is not None
+    assert found == pytest.approx([s.replace(tzinfo=UTC).timestamp() for s in whole], abs=1e-6)
+
+
+@pytest.mark.parametrize(
+    "stamp",
+    ["2026-02-30 00:00:00", "2026-13-01 00:00:00", "2026-01-01 24:00:00", "2026-01-0x 00:00:00"],
+)
+def test_a_stamp_that_is_no_date_is_left_to_the_general_reading(stamp: str) -> None:
+    assert fixed_width(pl.Series(["2026-01-01 00:00:00", stamp]), "%Y-%m-%d %H:%M:%S%.f") is None
