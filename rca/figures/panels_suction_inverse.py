@@ -271,7 +271,6 @@ def _explanations(inverse: Inverse, found: Explanations) -> Panel:
             "A pinch and a closed valve follow the square of the flow; a hose pressed flat over a "
             "length, or a strainer, follows viscosity.",
         ),
-        card=_card(inverse),
     )
 
 

@@ -388,8 +388,9 @@ def _notes(case: Case, inverse: Inverse) -> dict[str, str]:
 
 def _breath_words(found: Breathing) -> str:
     swing = f"{found.level_swing * 1e3:.0f} mm of level move the tank by "
-    swing += f"{found.tank_swing.p50 / BAR:.3f} bar ({found.tank_swing.p05 / BAR:.3f} to "
-    swing += f"{found.tank_swing.p95 / BAR:.3f}), a shut one by about {found.shut_swing / BAR:.2f}"
+    swing += (
+        f"{abs(found.tank_swing.p50) / BAR:.3f} bar, a shut one by {found.shut_swing / BAR:.2f}"
+    )
     return {
         "free": f"The reservoir breathes: {swing}.",
         "shut": f"The reservoir does not breathe: {swing}.",
