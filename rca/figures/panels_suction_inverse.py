@@ -42,7 +42,7 @@ def panels_inverse(check: SuctionCheck) -> tuple[Panel, ...]:
                 status="not assessed",
             ),
         )
-    panels = [_resistances(inverse), _explanations(inverse, found)]
+    panels = [_resistances(inverse), _explanations(found)]
     if check.counterfactuals:
         panels.append(_changes(check))
     return tuple(panels)
@@ -220,7 +220,7 @@ def _card(inverse: Inverse) -> Card:
     )
 
 
-def _explanations(inverse: Inverse, found: Explanations) -> Panel:
+def _explanations(found: Explanations) -> Panel:
     return Panel(
         key="suction.explanations",
         title="What explains the inlet pressure",
