@@ -138,6 +138,26 @@ def adiabatic_end_temperature(
     return np.asarray(t)
 
 
+def pressure_for_end_temperature(
+    t_start: npt.ArrayLike, p_start: npt.ArrayLike, t_end: npt.ArrayLike
+) -> Floats:
+    """Pressure at which air compressed without heat loss reaches ``t_end`` [Pa abs]; broadcasts.
+
+    The inverse of ``adiabatic_end_temperature``: a lower bound on the pressure that makes a bubble
+    so hot, as heat loss only asks for more. Valid for 200 K <= t_start <= t_end <= 6000 K,
+    p_start > 0. Source: isentropic ideal gas with NASA TM-4513. Raises OutOfRangeError.
+    """
+    t1, p1, t2 = np.broadcast_arrays(
+        *(np.asarray(x, dtype=float) for x in (t_start, p_start, t_end))
+    )
+    if not np.all((p1 > 0) & np.isfinite(p1) & (t2 >= t1)):
+        raise OutOfRangeError(
+            "pressure_for_end_temperature needs p_start > 0 Pa absolute and t_end >= t_start; got "
+            f"{p_start=}, {t_start=}, {t_end=}"
+        )
+    return np.asarray(p1 * np.exp(reduced_entropy(t2) - reduced_entropy(t1)))
+
+
 def constant_gamma_end_temperature(
     t_start: npt.ArrayLike,
     p_start: npt.ArrayLike,

@@ -1,11 +1,13 @@
 """What burning or merely compressed bubbles do to the oil: heat and soot, per litre and pass."""
 
+import math
 from dataclasses import dataclass
 
 from rca.base.errors import OutOfRangeError
 from rca.physics.compression import (
     AIR_GAS_CONSTANT,
     AIR_MOLAR_MASS,
+    UNIVERSAL_GAS_CONSTANT,
     adiabatic_end_temperature,
     air_internal_energy,
 )
@@ -89,5 +91,47 @@ def halving_energy(temperature: float, *, step: float = 10.0) -> float:
         raise OutOfRangeError(
             f"halving_energy needs temperature > 0 K and step > 0 K; got {temperature=}, {step=}"
         )
-    gas_constant = AIR_GAS_CONSTANT * AIR_MOLAR_MASS
-    return gas_constant * 0.6931471805599453 * temperature * (temperature + step) / step
+    return UNIVERSAL_GAS_CONSTANT * math.log(2.0) * temperature * (temperature + step) / step
+
+
+def halving_step(temperature: float, activation_energy: float) -> float:
+    """Warming from ``temperature`` [K] that halves oxidation life at an activation energy [K].
+
+    ``activation_energy`` [J/mol]; uninhibited base oils 80e3-130e3 (from memory). The inverse of
+    ``halving_energy``. Raises OutOfRangeError unless both are positive, or where no finite warming
+    halves the life.
+    """
+    _refuse_arrhenius("halving_step", temperature, activation_energy)
+    reach = UNIVERSAL_GAS_CONSTANT * math.log(2.0) * temperature / activation_energy
+    if reach >= 1.0:
+        raise OutOfRangeError(
+            f"halving_step: at {activation_energy:g} J/mol no warming from {temperature:g} K "
+            "halves the life"
+        )
+    return temperature * reach / (1.0 - reach)
+
+
+def life_ratio(temperature: float, reference: float, *, activation_energy: float = 100e3) -> float:
+    """Oxidation life at ``temperature`` over that at ``reference`` [-]; both [K].
+
+    exp[E/R (1/T - 1/T_ref)]; ``activation_energy`` E [J/mol], 80e3-130e3 for uninhibited base oil
+    (from memory). For inhibited oils it applies to the induction time, not to the acid number
+    reached; water, metals and air change the life more than ten kelvin do. Source: Arrhenius.
+    Raises OutOfRangeError unless all are positive and finite, temperatures 250-500 K.
+    """
+    _refuse_arrhenius("life_ratio", temperature, activation_energy)
+    if not (250.0 <= temperature <= 500.0 and 250.0 <= reference <= 500.0):
+        raise OutOfRangeError(
+            f"life_ratio is used from 250 K to 500 K; got {temperature=}, {reference=}"
+        )
+    return math.exp(
+        activation_energy / UNIVERSAL_GAS_CONSTANT * (1.0 / temperature - 1.0 / reference)
+    )
+
+
+def _refuse_arrhenius(name: str, temperature: float, energy: float) -> None:
+    if not (0 < temperature < math.inf and 0 < energy < math.inf):
+        raise OutOfRangeError(
+            f"{name} needs temperature > 0 K and activation_energy > 0 J/mol; got {temperature=}, "
+            f"activation_energy={energy}"
+        )

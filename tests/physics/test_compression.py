@@ -14,6 +14,7 @@ from rca.physics.compression import (
     air_internal_energy,
     constant_gamma_end_temperature,
     effective_exponent,
+    pressure_for_end_temperature,
     reduced_entropy,
 )
 
@@ -148,3 +149,43 @@ def test_others_refuse_too():
         constant_gamma_end_temperature(300.0, 1e5, 2e7, gamma=1.0)
     with pytest.raises(OutOfRangeError):
         effective_exponent(300.0, 900.0, 1.0)
+
+
+@pytest.mark.outside_value(
+    source="Cantera 3.2, air.yaml (other nitrogen polynomials), isentropes to 170 atm; constant gamma"
+)
+@pytest.mark.parametrize(("bar", "celsius", "kelvin", "constant"), [
+    (1.0, 40, 1245.3, 1090), (1.0, 50, 1279.0, 1134), (1.0, 60, 1312.5, 1177),
+    (0.8, 40, 1314.5, 1180), (0.8, 50, 1349.8, 1227), (0.8, 60, 1384.9, 1273),
+    (0.6, 40, 1408.6, 1305), (0.6, 50, 1446.1, 1355), (0.6, 60, 1483.3, 1405),
+])  # fmt: skip
+def test_nine_starts(bar, celsius, kelvin, constant):
+    t = celsius + 273.15
+    assert adiabatic_end_temperature(t, bar * 1e5, ATM170) == pytest.approx(kelvin, abs=2.0)
+    trap = float(constant_gamma_end_temperature(t, bar * 1e5, ATM170)) - 273.15
+    assert trap == pytest.approx(constant, abs=1.0)
+
+
+@pytest.mark.outside_value(
+    source="Cantera 3.2 air, isentrope from 1 bar and 50 degC, 10 to 350 bar"
+)
+def test_end_temperature_over_pressure():
+    bars = np.array([10, 20, 50, 100, 150, 200, 250, 300, 350])
+    kelvin = [616.0, 742.2, 941.3, 1119.7, 1236.7, 1326.0, 1399.1, 1461.3, 1515.8]
+    assert adiabatic_end_temperature(323.15, 1e5, bars * 1e5) == pytest.approx(kelvin, abs=2.0)
+
+
+@pytest.mark.outside_value(
+    source="Cantera 3.2 air: pressure for an ideal temperature from 1.0 and 0.6 bar, 50 degC"
+)
+def test_pressure_for_a_temperature():
+    t = [700.0, 800.0, 900.0, 1000.0, 1273.0]
+    bars = pressure_for_end_temperature(323.15, 1e5, t) / 1e5
+    assert bars == pytest.approx([16.1, 26.6, 41.9, 63.5, 169], rel=6e-3)
+    low = pressure_for_end_temperature(323.15, 0.6e5, t) / 1e5
+    assert low == pytest.approx([9.6, 16.0, 25.2, 38.1, 101], rel=8e-3)
+    back = adiabatic_end_temperature(323.15, 1e5, bars * 1e5)
+    assert back == pytest.approx(t, abs=1e-4)
+    for bad in ((323.15, 1e5, 300.0), (323.15, -1e5, 800.0), (float("nan"), 1e5, 800.0)):
+        with pytest.raises(OutOfRangeError):
+            pressure_for_end_temperature(*bad)
