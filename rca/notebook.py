@@ -65,13 +65,13 @@ from rca.figures.suction import figures_suction
 from rca.figures.timeline import Coverage
 from rca.figures.verdict import figures_verdict
 from rca.intake.oil_reports import OilReading, read_oil_reports
-from rca.intake.read import read_case
+from rca.intake.read import read_case, site_knowledge
 from rca.intake.record_files import RecordReading, read_records
 from rca.oil.check import OilCheck, check_oil
 from rca.records.bursts import BurstFinding, burst_finding
 from rca.records.check import RecordCheck, check_records, usable
 from rca.suction.check import SuctionCheck, check_suction, inlet_limit
-from rca.verdict.knowledge import shipped_knowledge
+from rca.verdict.knowledge import Knowledge, shipped_knowledge
 from rca.verdict.model import VerdictCheck
 from rca.verdict.weigh import weigh
 
@@ -168,6 +168,13 @@ class Investigation:
     def result_if_any(self, stage: str, kind: type[T]) -> T | None:
         """The typed result an earlier notebook stored; None where it had nothing to look at."""
         return None if self.store.read(stage).check is None else self.result(stage, kind)
+
+    def knowledge(self) -> Knowledge:
+        """The shipped knowledge, with the site's changes where the case names them.
+
+        Raises KnowledgeError with the line of the change that is at fault.
+        """
+        return site_knowledge(self.folder, self.case)
 
     def evidence(self) -> tuple[tuple[EvidenceItem, ...], tuple[NotAssessed, ...]]:
         """All items stored so far, in a fixed order: those that weigh, and those nobody saw."""

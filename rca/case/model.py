@@ -41,6 +41,7 @@ class Header:
     may_run: str = ""  # the engineer's own statement on running the unit now, with conditions
     severity: str = ""
     out_of_scope: tuple[str, ...] = ()
+    knowledge: str = ""  # file with the site's own numbers over the shipped knowledge
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -73,6 +73,7 @@ def _explanations(check: VerdictCheck) -> Panel:
                 note="Probability that the mechanism took part; several can be true at once, so "
                 "the numbers need not add up to one. Before: among failed pumps, by judgement.",
             ),
+            *_changes(check),
         ),
         figures=(
             FigureRef(
@@ -96,6 +97,38 @@ def _most_probable(check: VerdictCheck) -> str:
     shown = [c.cause for c in check.causes if c.probability >= 0.5 and c.cause != "unknown"]
     shown += [name for name, p in check.verdict.mechanisms.items() if p >= 0.5]
     return ", ".join(shown) or "nothing above one half"
+
+
+def _changes(check: VerdictCheck) -> tuple[Table, ...]:
+    """The numbers the site put in place of the shipped ones."""
+    if not check.changes:
+        return ()
+    return (
+        Table(
+            name="site-knowledge",
+            title="Numbers of the site in place of the shipped ones",
+            columns=(
+                Column(title="Of"),
+                Column(title="Number"),
+                Column(title="Shipped", numeric=True),
+                Column(title="Site", numeric=True),
+                Column(title="Reason"),
+                Column(title="Place"),
+            ),
+            rows=tuple(
+                (
+                    c.variable,
+                    c.number,
+                    f"{c.before:.3g}" if c.before is not None else "none",
+                    f"{c.after:.3g}",
+                    c.reason,
+                    c.place,
+                )
+                for c in check.changes
+            ),
+            note=f"Knowledge {check.knowledge}; not comparable with verdicts under other numbers.",
+        ),
+    )
 
 
 def _order_words(check: VerdictCheck) -> tuple[str, ...]:

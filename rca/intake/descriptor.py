@@ -118,6 +118,7 @@ def _header(table: Table, findings: Findings) -> Header:
         cost=table.text("cost"),
         may_run=table.text("may_run"),
         severity=table.text("severity"),
+        knowledge=table.text("knowledge"),
         out_of_scope=tuple(scope),
     )
     if header.investigator and header.investigator == header.reviewer:

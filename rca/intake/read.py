@@ -3,7 +3,7 @@
 from dataclasses import dataclass, replace
 from pathlib import Path
 
-from rca.base.errors import CaseError, Problem, Severity
+from rca.base.errors import CaseError, KnowledgeError, Problem, Severity
 from rca.case.gaps import gaps_of
 from rca.case.model import Case, EvidenceFile
 from rca.intake.descriptor import Descriptor, read_descriptor
@@ -15,6 +15,8 @@ from rca.intake.evidence_tables import (
 )
 from rca.intake.files import DESCRIPTOR, list_files
 from rca.intake.photos import read_photos
+from rca.verdict.knowledge import Knowledge, shipped_knowledge
+from rca.verdict.overlay import overlaid
 
 MOST_NOTES = 1_000_000  # characters
 
@@ -60,6 +62,7 @@ def read_case(folder: Path) -> CaseReading:
     case = _case(folder, descriptor, by_name, problems)
     problems += _named_files(case, by_name)
     problems += _links_between(case)
+    problems += _site_knowledge(folder, case)
     return CaseReading(case=replace(case, gaps=gaps_of(case)), problems=tuple(problems))
 
 
@@ -132,6 +135,41 @@ def _notes(folder: Path, problems: list[Problem]) -> str:
             )
         )
         return path.read_text(encoding="utf-8", errors="replace")[:MOST_NOTES]
+
+
+def site_knowledge(folder: Path, case: Case) -> Knowledge:
+    """The shipped knowledge, with the site's changes where the case names a file of them.
+
+    Raises KnowledgeError with file and line where that file is at fault.
+    """
+    name = case.header.knowledge
+    if not name:
+        return shipped_knowledge()
+    if name not in {file.file for file in case.files}:
+        raise KnowledgeError(f"{name}: no such file in the case folder")
+    try:
+        text = (folder / name).read_text(encoding="utf-8-sig")
+    except UnicodeDecodeError as error:
+        raise KnowledgeError(f"{name}: text that is not UTF-8") from error
+    return overlaid(shipped_knowledge(), text, file=name)
+
+
+def _site_knowledge(folder: Path, case: Case) -> list[Problem]:
+    """What is wrong with the site's own knowledge."""
+    try:
+        site_knowledge(folder, case)
+    except KnowledgeError as error:
+        return [
+            Problem(
+                severity=Severity.ERROR,
+                file=DESCRIPTOR,
+                place="case.knowledge",
+                found=str(error),
+                expected="changes to the shipped knowledge, each with its reason",
+                mend="Mend that line, or leave the key out to use the shipped knowledge.",
+            )
+        ]
+    return []
 
 
 def _named_files(case: Case, files: dict[str, EvidenceFile]) -> list[Problem]:

@@ -60,6 +60,18 @@ class PossibleTest:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Change:
+    """One number a site put in place of the shipped one, with its reason."""
+
+    variable: str
+    number: str
+    before: float | None  # None where the arrow is new
+    after: float
+    reason: str
+    place: str  # file and line
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Knowledge:
     """All of the knowledge, with its version and hash."""
 
@@ -70,6 +82,7 @@ class Knowledge:
     reliability: Mapping[str, float]
     tests: tuple[PossibleTest, ...]
     doubt: float  # chance that the network itself is wrong, so that its evidence says nothing
+    changes: tuple[Change, ...] = ()  # of a site, over the shipped file
 
     @property
     def identity(self) -> str:
@@ -102,8 +115,8 @@ def parse_knowledge(text: str) -> Knowledge:
     reader = _Reader(text, plain)
     variables = reader.variables()
     _complete(variables)
-    _known_parents(reader, variables)
-    _no_cycle(variables)
+    known_parents(variables, variables, reader)
+    no_cycle(variables)
     tests = tuple(PossibleTest(**row) for row in plain.get("test", []))
     for test in tests:
         if test.looks_at not in variables:
@@ -162,23 +175,7 @@ class _Reader:
         return self._parse(name, table[key], str(table.get("flag", "judgement")))
 
     def _parse(self, name: str, value: Any, flag: str) -> Number:
-        if isinstance(value, list):
-            low, best, high = (self._inside(name, v) for v in value)
-            if not low <= best <= high:
-                raise KnowledgeError(f"{self.place(name)}: {value} is not low, best, high")
-            return Number(low=low, best=best, high=high)
-        best = self._inside(name, value)
-        half = float(self.spread.get(flag, 1.0))
-        centre = math.log(best / (1 - best))
-        return Number(low=_expit(centre - half), best=best, high=_expit(centre + half))
-
-    def _inside(self, name: str, value: Any) -> float:
-        if not isinstance(value, int | float) or not 0.0 < value < 1.0:
-            raise KnowledgeError(
-                f"{self.place(name)}: found {value!r}; expected a probability above 0 and "
-                "below 1; nothing is impossible or certain in this trade, so write 0.001 or 0.999"
-            )
-        return float(value)
+        return parse_number(value, self.place(name), float(self.spread.get(flag, 1.0)))
 
     def place(self, name: str) -> str:
         """A name with the line of its table."""
@@ -186,6 +183,30 @@ class _Reader:
             if f'"{name}"]' in line:
                 return f"line {number}, {name}"
         return name
+
+
+def parse_number(value: Any, place: str, half: float = 1.0) -> Number:
+    """A probability, or low, best and high; ``half`` is the spread in log odds of a single one.
+
+    Raises KnowledgeError with the place for 0, 1, what lies beyond, and what is no number.
+    """
+    if isinstance(value, list) and len(value) == 3:
+        low, best, high = (_inside(place, v) for v in value)
+        if not low <= best <= high:
+            raise KnowledgeError(f"{place}: {value} is not low, best, high")
+        return Number(low=low, best=best, high=high)
+    best = _inside(place, value)
+    centre = math.log(best / (1 - best))
+    return Number(low=_expit(centre - half), best=best, high=_expit(centre + half))
+
+
+def _inside(place: str, value: Any) -> float:
+    if isinstance(value, bool) or not isinstance(value, int | float) or not 0.0 < value < 1.0:
+        raise KnowledgeError(
+            f"{place}: found {value!r}; expected a probability above 0 and "
+            "below 1; nothing is impossible or certain in this trade, so write 0.001 or 0.999"
+        )
+    return float(value)
 
 
 def _complete(variables: Mapping[str, Variable]) -> None:
@@ -200,14 +221,21 @@ def _complete(variables: Mapping[str, Variable]) -> None:
         raise KnowledgeError(f"no numbers for the observable nodes {', '.join(missing)}")
 
 
-def _known_parents(reader: _Reader, variables: Mapping[str, Variable]) -> None:
-    for variable in variables.values():
+def known_parents(
+    some: Mapping[str, Variable], variables: Mapping[str, Variable], place: "_Reader | str"
+) -> None:
+    """Refuse parents nobody knows; signs are brought about and bring nothing about."""
+    for variable in some.values():
+        where = place if isinstance(place, str) else place.place(variable.name)
         for parent in (*variable.leaves, *variable.needs):
             if parent not in variables:
-                raise KnowledgeError(f"{reader.place(variable.name)}: unknown parent {parent!r}")
+                raise KnowledgeError(f"{where}: unknown parent {parent!r}")
+            if variables[parent].kind == "sign":
+                raise KnowledgeError(f"{where}: the sign {parent!r} can't be a parent")
 
 
-def _no_cycle(variables: Mapping[str, Variable]) -> None:
+def no_cycle(variables: Mapping[str, Variable]) -> None:
+    """Refuse a circle of causes."""
     done: set[str] = set()
 
     def visit(name: str, path: tuple[str, ...]) -> None:

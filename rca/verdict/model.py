@@ -3,6 +3,7 @@
 from dataclasses import dataclass, field
 
 from rca.base.source import Source
+from rca.verdict.knowledge import Change
 from rca.verdict.order import Order
 from rca.verdict.without import Without
 
@@ -153,3 +154,4 @@ class VerdictCheck:
     causes: tuple[RankedCause, ...]
     evidence: tuple[WeighedItem, ...]
     knowledge: str
+    changes: tuple[Change, ...] = ()  # numbers a site put in place of the shipped ones

@@ -111,6 +111,7 @@ def weigh(
         causes=_causes(knowledge, items, ids, hidden),
         evidence=weighed,
         knowledge=knowledge.identity,
+        changes=knowledge.changes,
     )
 
 

@@ -12,8 +12,8 @@ from rca.verdict.explain import chance, verbal
 from rca.verdict.inference import Factor, joint
 from rca.verdict.knowledge import parse_knowledge, shipped_knowledge
 from rca.verdict.network import Numbers, evidence_factors, prior_factors, states_of
-from rca.verdict.side import side_of
 from rca.verdict.posterior import posterior
+from rca.verdict.side import side_of
 from rca.verdict.weigh import weigh
 
 K = shipped_knowledge()
