@@ -90,6 +90,16 @@ def entry_loss(
     return np.asarray(HAGENBACH * share * laminar * 0.5 * rho * velocity**2)
 
 
+def kinetic_coefficient(re: FloatArray) -> FloatArray:
+    """Kinetic energy of a pipe flow over that of its mean speed [-].
+
+    2 laminar (exact), 1.06 turbulent (one-seventh power profile), straight between Re 2100 and
+    4000. Source: White, Fluid Mechanics, sec. 3.7 (from memory).
+    """
+    share = np.clip((re - LAMINAR_LIMIT) / (TURBULENT_LIMIT - LAMINAR_LIMIT), 0.0, 1.0)
+    return np.asarray(2.0 - 0.94 * share)
+
+
 def fitting_coefficient(form: str, re: FloatArray, bore: float) -> FloatArray:
     """Loss coefficient of a fitting at any Reynolds number, referred to its bore.
 

@@ -13,6 +13,7 @@ from rca.physics.line_losses import (
     breather_loss,
     entry_loss,
     fitting_coefficient,
+    kinetic_coefficient,
     pipe_loss,
     reducer_coefficient,
     reynolds,
@@ -26,7 +27,6 @@ HOSE_ROUGHNESS = 0.03e-3  # [m], common practice, no source
 PIPE_ROUGHNESS = 0.05e-3  # [m], drawn and commercial steel between; common practice, no source
 AIR_BREATHING = 0.3  # air drawn through the breather as a share of pump flow where no level swing
 # is given; common practice, no source
-KINETIC = 2.0  # kinetic-energy coefficient of laminar flow, exact
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -142,7 +142,7 @@ def pressure_budget(
         (part_name(part), _part_loss(part, q, nu, rho, state) * loss_factor)
         for part in case.suction_line
     )
-    kinetic = _kinetic(case, q, rho)
+    kinetic = _kinetic(case, q, nu, rho)
     losses = np.sum([loss for _, loss in parts], axis=0) if parts else np.zeros_like(q)
     inlet = p_air + head - breather - losses - kinetic
     return Budget(
@@ -172,13 +172,13 @@ def _breather(case: Case, q: FloatArray, state: Condition) -> FloatArray:
     )
 
 
-def _kinetic(case: Case, q: FloatArray, rho: FloatArray) -> FloatArray:
+def _kinetic(case: Case, q: FloatArray, nu: FloatArray, rho: FloatArray) -> FloatArray:
     """Pressure turned into speed at the pump's inlet bore, taken as the last bore of the line."""
     bores = [part.bore.value for part in case.suction_line if part.bore is not None]
     if not bores:
         return np.zeros_like(q)
     velocity = q / (np.pi / 4.0 * bores[-1] ** 2)
-    return np.asarray(KINETIC * 0.5 * rho * velocity**2)
+    return np.asarray(kinetic_coefficient(reynolds(q, bores[-1], nu)) * 0.5 * rho * velocity**2)
 
 
 def _part_loss(

@@ -16,6 +16,7 @@ from rca.suction.inverse import Inverse, InverseDraws, estimate_resistances
 from rca.suction.measured import MeasuredInlet, measure_inlet
 from rca.suction.path import Path, air_along_path
 from rca.suction.priors import NOTICED
+from rca.suction.reservoir_air import ReservoirAir, reservoir_air
 from rca.suction.spread import Spread
 from rca.suction.state import (
     RELEASED_MATTERS,
@@ -67,6 +68,7 @@ class SuctionCheck:
     coldest_clean: float | None = None  # [K], the clean line holds the limit down to here
     coldest_found: float | None = None  # [K], the line as found
     pulsation_bound: float | None = None  # [Pa], dip of a rigid oil column; an upper bound
+    reservoir: ReservoirAir | None = None  # dwell against the time the air needs
     missing: tuple[str, ...] = ()
     seed: int = 0
     samples: int = 0
@@ -113,10 +115,19 @@ def check_suction(
         coldest_clean=coldest_within_limit(case),
         coldest_found=_coldest_found(case, found, changes),
         pulsation_bound=_pulsation_bound(case),
+        reservoir=reservoir_air(case, _inlet(normal, measured)),
         missing=missing,
         seed=seed,
         samples=samples,
     )
+
+
+def _inlet(normal: InletState | None, measured: MeasuredInlet | None) -> float | None:
+    """Inlet pressure of the warm, running pump [Pa]: measured, else computed."""
+    regime = measured and (measured.last or measured.warm)
+    if regime:
+        return regime.median
+    return normal.pressure.p50 if normal is not None else None
 
 
 def _paths(case: Case, found: Found, seed: int) -> tuple[Path, ...]:

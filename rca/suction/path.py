@@ -8,8 +8,9 @@ import numpy.typing as npt
 from rca.case.model import Case, SuctionPart
 from rca.case.vocabulary import PartKind
 from rca.physics.dissolved_air import released_ratio
+from rca.physics.line_losses import kinetic_coefficient, reynolds
+from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.budget import (
-    KINETIC,
     fluid_viscosities,
     oil_density,
     pressure_budget,
@@ -64,8 +65,10 @@ def air_along_path(
     flow, warm = pump_flow(case), case.fluid.temperature
     if flow is None or float(flow) <= 0.0 or warm is None or not case.suction_line:
         return None
-    if fluid_viscosities(case) is None or not usable_temperature(warm):
+    viscosities = fluid_viscosities(case)
+    if viscosities is None or not usable_temperature(warm):
         return None
+    nu = float(kinematic_viscosity(warm.value, *viscosities))
     budget = pressure_budget(case, float(flow), warm.value)
     losses = np.array([float(loss) for _, loss in budget.parts])
     losses += _placed(case, viscous_excess, (PartKind.STRAINER,), (PartKind.PIPE, PartKind.HOSE))
@@ -81,7 +84,7 @@ def air_along_path(
     for part, loss, (name, _) in zip(case.suction_line, losses, budget.parts, strict=True):
         pieces = STEPS if part.length is not None else 1
         time = _time(part, float(flow)) / pieces
-        speed_head = _speed_head(part, float(flow), rho)
+        speed_head = _speed_head(part, float(flow), nu, rho)
         static = now
         for _ in range(pieces):
             now -= loss / pieces
@@ -135,7 +138,9 @@ def _time(part: SuctionPart, flow: float) -> float:
     return float(np.pi / 4.0 * part.bore.value**2 * part.length.value * part.count / flow)
 
 
-def _speed_head(part: SuctionPart, flow: float, rho: float) -> float:
+def _speed_head(part: SuctionPart, flow: float, nu: float, rho: float) -> float:
     if part.bore is None:
         return 0.0
-    return float(KINETIC * 0.5 * rho * (flow / (np.pi / 4.0 * part.bore.value**2)) ** 2)
+    bore = part.bore.value
+    factor = kinetic_coefficient(reynolds(np.asarray(flow), bore, np.asarray(nu)))
+    return float(factor * 0.5 * rho * (flow / (np.pi / 4.0 * bore**2)) ** 2)
