@@ -3,6 +3,7 @@
 import numpy as np
 import numpy.typing as npt
 
+from rca.discharge.critical import critical_radius
 from rca.discharge.delay import delays
 from rca.discharge.inputs import Inputs
 from rca.discharge.model import Map, Trace
@@ -35,30 +36,17 @@ def core_map(inputs: Inputs, *, columns: int = 40, rows: int = 24) -> Map:
         radius=tuple(radius.tolist()),
         rise_time=tuple(rise.tolist()),
         core=tuple(tuple(row) for row in core.tolist()),
-        critical=tuple(critical_radius(inputs, rise).tolist()),
+        critical=tuple(
+            critical_radius(
+                rise,
+                inlet=inputs.inlet.value,
+                temperature=inputs.temperature.value,
+                discharge=inputs.discharge.value,
+                hold=HOLD,
+                oil=inputs.oil,
+            ).tolist()
+        ),
     )
-
-
-def critical_radius(inputs: Inputs, rise: Floats) -> Floats:
-    """Radius at the inlet at which the core stays hot just as long as the delay [m]; inf if none.
-
-    Stoichiometric vapour taken to be there, so a lower bound on the radius; bisection on ln R.
-    """
-    low, high = np.full(rise.shape, np.log(RADII[0])), np.full(rise.shape, np.log(2 * RADII[1]))
-    for _ in range(14):
-        middle = 0.5 * (low + high)
-        hot = _ignites(inputs, np.exp(middle), rise)
-        high, low = np.where(hot, middle, high), np.where(hot, low, middle)
-    never = ~_ignites(inputs, np.full(rise.shape, 2 * RADII[1]), rise)
-    return np.asarray(np.where(never, np.inf, np.exp(high)))
-
-
-def _ignites(inputs: Inputs, radius: Floats, rise: Floats) -> npt.NDArray[np.bool_]:
-    peaks = bubble_batch(
-        radius, inputs.temperature.value, inputs.inlet.value, inputs.discharge.value, rise,
-        hold=HOLD, oil=inputs.oil, inertial=False, delays=delays(), stop_at_ignition=True,
-    )  # fmt: skip
-    return np.asarray(peaks.delay_integral >= 1.0)
 
 
 def trace(inputs: Inputs, radius: float) -> Trace:

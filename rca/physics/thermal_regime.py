@@ -5,6 +5,7 @@ import numpy.typing as npt
 
 from rca.base.errors import OutOfRangeError
 from rca.physics.compression import AIR_GAS_CONSTANT, AIR_MOLAR_MASS, air_heat_capacity
+from rca.physics.small_oscillation import thermal_transfer
 
 Floats = npt.NDArray[np.float64]
 
@@ -138,18 +139,11 @@ def small_amplitude_exponent(chi: npt.ArrayLike, *, gamma: float = 1.4) -> Float
     """Effective polytropic exponent of a bubble under small oscillations [-].
 
     ``chi`` = alpha/(omega R^2) [-]: large is isothermal (1), small adiabatic (gamma).
-    Phi = 3 gamma / (1 - 3 (gamma - 1) i chi [(i/chi)^0.5 coth (i/chi)^0.5 - 1]), kappa = Re Phi/3.
+    Re(Phi)/3 of ``thermal_transfer``, which has the damping too.
     Source: Prosperetti, J. Acoust. Soc. Am. 61 (1977) 17-27.
     Raises OutOfRangeError unless chi > 0 and gamma > 1.
     """
-    x = np.asarray(chi, dtype=float)
-    if not (np.all(x > 0) and gamma > 1):
-        raise OutOfRangeError(
-            f"small_amplitude_exponent needs chi > 0 and gamma > 1; got {chi=}, {gamma=}"
-        )
-    root = np.sqrt(1j / x)
-    phi = 3 * gamma / (1 - 3 * (gamma - 1) * 1j * x * (root / np.tanh(root) - 1))
-    return np.asarray(phi.real / 3)
+    return np.asarray(thermal_transfer(chi, gamma=gamma).real / 3)
 
 
 def contact_temperature(
