@@ -27,6 +27,7 @@ def from_suction(
     """Items on the inlet pressure and what it does to the air in the oil."""
     items: Items = [*_measured(check, aligned), *_computed(case, check)]
     items.append(_released(check, aligned))
+    items.append(_reservoir(case, check))
     items.append(_cold(check))
     items.append(_too_small(case, check))
     items.append(_thin_air(case, check, aligned))
@@ -215,6 +216,37 @@ def _released(check: SuctionCheck, aligned: AlignedRecord | None) -> EvidenceIte
         basis=basis,
         reading=Reading(value=level, unit="-", origin=Origin.CALCULATED),
         absent=share < 0.5,
+    )
+
+
+def _reservoir(case: Case, check: SuctionCheck) -> EvidenceItem | NotAssessed:
+    """Time of the oil in the reservoir against what its air needs; says nothing of a leak."""
+    found = check.reservoir
+    if found is None:
+        return NotAssessed(
+            key="air.reservoir",
+            node=Node.CARRIED_AIR,
+            missing="the oil volume of the reservoir and the flow through it",
+        )
+    # a tenth of the air left over is usual and says nothing; most of it left over says a little
+    kept = float(np.clip((found.remaining - 0.1) / 0.5, -0.2, 1.0))
+    return EvidenceItem(
+        key="air.reservoir",
+        node=Node.CARRIED_AIR,
+        likelihood={"no": 0.5 - 0.2 * kept, "yes": 0.5 + 0.2 * kept},
+        statement=(
+            f"The oil stays about {found.dwell / 60:.1f} min in the reservoir; its air needs "
+            f"{found.release_time / 60:.1f} min to come out"
+            f"{'' if found.release_stated else ' (usual value)'}, so about "
+            f"{100 * found.remaining:.0f} % of what enters goes round again, bubbles below "
+            f"{1e3 * found.kept_diameter:.1f} mm."
+        ),
+        sources=_descriptor(case),
+        group=Group.AIR,
+        common_cause="reservoir as described",
+        basis=Basis.COMPUTED,
+        reading=Reading(value=found.remaining, unit="-", origin=Origin.CALCULATED),
+        absent=kept <= 0.0,
     )
 
 

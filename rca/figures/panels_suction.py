@@ -6,6 +6,7 @@ from rca.figures.numbers import bar, celsius, share, with_u
 from rca.figures.panels_suction_inverse import panels_inverse
 from rca.suction.check import InletState, SuctionCheck, transducer_error
 from rca.suction.measured import MeasuredInlet, Regime
+from rca.suction.reservoir_air import ReservoirAir
 from rca.suction.tornado import COLDEST
 
 BUDGET_LIMITS = (
@@ -29,6 +30,8 @@ def panels_suction(case: Case, check: SuctionCheck) -> Section:
         panels.append(_measured(check, check.measured))
         panels += panels_inverse(check)
     panels.append(_air(check))
+    if check.reservoir is not None:
+        panels.append(_reservoir(check.reservoir))
     return Section(stage="suction", title="Suction side", panels=tuple(panels))
 
 
@@ -298,7 +301,7 @@ def _air(check: SuctionCheck) -> Panel:
         question="How much air comes out of solution by the time the oil reaches the pump?",
         answer=answer,
         status="supported" if (measured and measured.released > 0.01) else "not excluded",
-        paragraphs=(f"Time of the oil in the suction line: {residence}.",),
+        paragraphs=(f"Time of the oil in the suction line: {residence}.", *_nucleus(check)),
         tables=(
             Table(
                 name="suction-air",
@@ -324,6 +327,54 @@ def _air(check: SuctionCheck) -> Panel:
             robustness=(2, "the amount moves with the unknown rate more than with the pressure"),
         ),
     )
+
+
+def _nucleus(check: SuctionCheck) -> tuple[str, ...]:
+    if check.reservoir is None or check.reservoir.nucleus is None:
+        return ()
+    return (
+        f"At this inlet pressure gas nuclei above {1e6 * check.reservoir.nucleus:.1f} \u00b5m "
+        "radius grow; oil in service holds far coarser ones.",
+    )
+
+
+def _reservoir(found: ReservoirAir) -> Panel:
+    release = "" if found.release_stated else ", usual value of the grade's standard"
+    clean = (
+        f" ({1e3 * found.clean_diameter:.1f} mm with a clean surface)"
+        if found.clean_diameter is not None
+        else ""
+    )
+    return Panel(
+        key="suction.reservoir",
+        title="Air carried round by the reservoir",
+        question="Does the oil stay long enough in the reservoir to give up its air?",
+        answer=(
+            f"It stays about {found.dwell / 60:.1f} min; its air needs "
+            f"{found.release_time / 60:.1f} min to come out, so about "
+            f"{100 * found.remaining:.0f} % of the air that enters goes round again."
+        ),
+        status="supported" if found.remaining > 0.5 else "not excluded",
+        paragraphs=(
+            f"Volume over flow is {found.ideal_dwell / 60:.1f} min; {_baffle(found)} gives the "
+            f"oil part of it. Air release time at the oil's temperature: "
+            f"{found.release_time / 60:.1f} min{release}.",
+            f"Bubbles below {1e3 * found.kept_diameter:.1f} mm{clean} do not rise out of "
+            f"{found.depth:.2f} m{'' if found.depth_stated else ' (depth assumed)'} in that time.",
+        ),
+        limits=(
+            "Air release time after ASTM D3427 and ISO 9120, to 0.2 % air; decay between the ends "
+            "of that test taken as exponential (judgement). Rise by Stokes, stiff surface.",
+            "How much air enters is not known; a leak on the suction side adds air behind the "
+            "reservoir and is not in this.",
+        ),
+    )
+
+
+def _baffle(found: ReservoirAir) -> str:
+    if found.baffle is None:
+        return "a reservoir whose baffle is not stated, taken as without,"
+    return "a baffled reservoir" if found.baffle else "a reservoir without a baffle"
 
 
 def _path_figure(check: SuctionCheck) -> tuple[FigureRef, ...]:
