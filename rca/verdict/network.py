@@ -65,10 +65,12 @@ def evidence_factors(
     """Factors of the items.
 
     Items of one common cause share one hidden variable, whether what they rest on is sound; when
-    it is not, none of them says anything. ``weights`` (item key -> (B,)) of 0 leaves an item out
-    of a batch member, 1 keeps it.
+    it is not, none of them says anything. A sign that several causes look at is one sign: it stays
+    in the network as a variable. ``weights`` (item key -> (B,)) of 0 leaves an item out of a
+    batch member, 1 keeps it.
     """
-    factors: list[Factor] = []
+    shared = _looked_at_twice(knowledge, items)
+    factors = [_cpt(knowledge.variables[node], numbers) for node in shared]
     by_cause: dict[str, list[EvidenceItem]] = {}
     for item in items:
         by_cause.setdefault(item.common_cause, []).append(item)
@@ -81,8 +83,22 @@ def evidence_factors(
             by_node.setdefault(item.node.value, []).append(item)
         for node, same in by_node.items():
             likelihood = _likelihood(node, same, weights)
-            factors.append(_observed(knowledge.variables[node], likelihood, sound, numbers))
+            variable = knowledge.variables[node]
+            leaf = variable.kind == "sign" and node not in shared
+            factors.append(_observed(variable, likelihood, sound, numbers, leaf=leaf))
     return factors
+
+
+def _looked_at_twice(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> tuple[str, ...]:
+    """Signs with items of more than one common cause."""
+    causes: dict[str, set[str]] = {}
+    for item in items:
+        causes.setdefault(item.node.value, set()).add(item.common_cause)
+    return tuple(
+        node
+        for node, by in causes.items()
+        if len(by) > 1 and knowledge.variables[node].kind == "sign"
+    )
 
 
 def states_of(name: str) -> tuple[str, ...]:
@@ -109,15 +125,17 @@ def _likelihood(
     return np.asarray(stacked[strongest, np.arange(stacked.shape[1])])
 
 
-def _observed(variable: Variable, likelihood: FloatArray, sound: str, numbers: Numbers) -> Factor:
+def _observed(
+    variable: Variable, likelihood: FloatArray, sound: str, numbers: Numbers, *, leaf: bool
+) -> Factor:
     """An observation of a variable, void where its common cause is not sound.
 
-    A sign is a leaf, so it is summed out here: the factor is over its parents.
+    A sign nobody else looked at is a leaf and summed out here: the factor is over its parents.
     """
     # A void look says either thing at random: P'(E|H) = r P(E|H) + (1 - r) q with q the mean over
     # the states. Giving it more would let it win against many sound looks by their number alone.
     flat = np.ones_like(likelihood) * likelihood.mean(axis=1, keepdims=True)
-    if variable.kind != "sign":
+    if not leaf:
         table = np.stack([flat, likelihood], axis=1)  # (B, sound, states)
         return Factor((sound, variable.name), table)
     names, absent = _noisy_or_absent(variable, numbers)
