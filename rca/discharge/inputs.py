@@ -14,6 +14,11 @@ from rca.discharge.model import RiseTime, Spread
 from rca.physics.bubble import OilSide
 from rca.physics.collapse import ramp_time
 from rca.physics.fluid_class import class_values, density
+from rca.physics.oil_thermal import (
+    petroleum_conductivity,
+    petroleum_heat_capacity,
+    surface_tension,
+)
 from rca.physics.viscosity import kinematic_viscosity
 from rca.suction.budget import fluid_class_name, fluid_viscosities
 
@@ -179,22 +184,22 @@ def _rise(log_mean: float, log_sd: float, measured: bool, basis: str) -> RiseTim
 def oil_side(case: Case, temperature: float) -> OilSide:
     """Properties of the oil round a bubble, from the case or its class.
 
-    Heat capacity and conductivity of petroleum oils: Cragoe, NBS Misc. Publ. 97 (1929), from
-    memory; for other classes the same forms are used (wall temperatures move by a few kelvin).
+    Petroleum oils and polyalphaolefins after Cragoe (``rca.physics.oil_thermal``), other fluids by
+    class values. An error of a tenth in them moves the wall by a few kelvin only.
+    Raises OutOfRangeError outside the ranges of those properties.
     """
     values = class_values(fluid_class_name(case))
     rho15 = case.fluid.density_15.value if case.fluid.density_15 else values.density_15
     rho = density(temperature, rho15, values.expansion)
-    celsius, d = temperature - 273.15, rho15 / 999.0
     nu = 30e-6
     points = fluid_viscosities(case)
     if points is not None:
         nu = float(kinematic_viscosity(temperature, *points))
     return OilSide(
-        conductivity=0.1172 * (1 - 0.00054 * celsius) / d,
+        conductivity=values.conductivity or float(petroleum_conductivity(temperature, rho15)),
         density=rho,
-        heat_capacity=float(1e3 * (1.685 + 0.0034 * celsius) / np.sqrt(d)),
+        heat_capacity=values.heat_capacity or float(petroleum_heat_capacity(temperature, rho15)),
         viscosity=nu * rho,
-        tension=values.surface_tension,
+        tension=float(surface_tension(temperature, values.surface_tension)),
         sound_speed=float(np.sqrt(values.bulk_modulus / rho)),
     )

@@ -19,13 +19,16 @@ class ClassValues:
     bulk_modulus: float  # [Pa], isentropic tangent, low pressure, 50 degC
     surface_tension: float  # [N/m]
     flammable_vapour: bool  # whether its vapour can feed an ignition at all
+    heat_capacity: float | None = None  # [J/(kg K)] near 50 degC; None: as petroleum oil
+    conductivity: float | None = None  # [W/(m K)] near 50 degC; None: as petroleum oil
 
 
 # Bunsen: Backe, Grundlagen der Oelhydraulik, RWTH Aachen 1974 (mineral 8-10, phosphate ester 8-9,
 # polyglycol-water 3-4 volume per cent; the water glycol interval is kept wide, 1-4); PAO by
 # ASTM D2779 at its density; ester common practice, no source. Flash and autoignition: typical
 # safety data, common practice, no source. Density and expansion: common practice, no source.
-# Bulk modulus: Hayward 1970 (mineral, from memory), others common practice, no source.
+# Bulk modulus: Hayward 1970 (mineral, from memory), others common practice, no source. Heat
+# capacity and conductivity where given: common practice, no source.
 CLASSES: Final[dict[str, ClassValues]] = {
     "mineral": ClassValues(
         density_15=872.0,
@@ -59,6 +62,8 @@ CLASSES: Final[dict[str, ClassValues]] = {
         bulk_modulus=1.9e9,
         surface_tension=0.029,
         flammable_vapour=True,
+        heat_capacity=2000.0,
+        conductivity=0.145,
     ),
     "phosphate ester": ClassValues(
         density_15=1130.0,
@@ -70,6 +75,8 @@ CLASSES: Final[dict[str, ClassValues]] = {
         bulk_modulus=2.3e9,
         surface_tension=0.032,
         flammable_vapour=True,
+        heat_capacity=1700.0,
+        conductivity=0.13,
     ),
     "water glycol": ClassValues(
         density_15=1075.0,
@@ -81,6 +88,8 @@ CLASSES: Final[dict[str, ClassValues]] = {
         bulk_modulus=3.4e9,
         surface_tension=0.045,
         flammable_vapour=False,
+        heat_capacity=3300.0,
+        conductivity=0.42,
     ),
 }
 

@@ -18,9 +18,9 @@ def _relative(
     name: str, temperature: npt.ArrayLike, density_15: npt.ArrayLike
 ) -> tuple[Floats, Floats]:
     t, rho = np.asarray(temperature, dtype=float), np.asarray(density_15, dtype=float)
-    if not np.all((t >= 253.15) & (t <= 573.15) & (rho >= 700) & (rho <= 1000)):
+    if not np.all((t >= 233.15) & (t <= 573.15) & (rho >= 700) & (rho <= 1000)):
         raise OutOfRangeError(
-            f"{name} holds for petroleum oils of 700-1000 kg/m3, -20 to 300 degC (Cragoe, NBS "
+            f"{name} holds for petroleum oils of 700-1000 kg/m3, -40 to 300 degC (Cragoe, NBS "
             f"Misc. Publ. 97, 1929); got {temperature!r} K, {density_15!r} kg/m3"
         )
     return t - 273.15, rho / WATER_15
@@ -32,7 +32,7 @@ def petroleum_heat_capacity(temperature: npt.ArrayLike, density_15: npt.ArrayLik
     (1.685 + 0.0034 t)/sqrt(d) kJ/(kg K), t [degC]; ``temperature`` [K], ``density_15`` [kg/m3].
     Within 4 %; some 6 % low for pure paraffins and polyalphaolefins.
     Source: Cragoe, NBS Misc. Publ. 97 (1929) (from memory).
-    Raises OutOfRangeError outside 253-573 K, 700-1000 kg/m3, or for NaN.
+    Raises OutOfRangeError outside 233-573 K, 700-1000 kg/m3, or for NaN.
     """
     t, d = _relative("petroleum_heat_capacity", temperature, density_15)
     return np.asarray(1e3 * (1.685 + 0.0034 * t) / np.sqrt(d))
@@ -61,15 +61,15 @@ def petroleum_latent_heat(temperature: npt.ArrayLike, density_15: npt.ArrayLike)
 def surface_tension(temperature: npt.ArrayLike, tension_20: npt.ArrayLike) -> Floats:
     """Surface tension against air [N/m]: falls by 0.07 mN/m per kelvin from 20 degC.
 
-    ``temperature`` [K] 253-423, ``tension_20`` [N/m] 0.015 to 0.08 (mineral oil 0.031, polyol
+    ``temperature`` [K] 233-473, ``tension_20`` [N/m] 0.015 to 0.08 (mineral oil 0.031, polyol
     ester 0.029; a measured value wins). Within 10 %; silicone anti-foam lowers the surface's, not
     the bulk's, value further. Source: common practice, no source; n-alkanes fall by 0.08-0.09.
     Raises OutOfRangeError outside the range or for NaN.
     """
     t, s = np.asarray(temperature, dtype=float), np.asarray(tension_20, dtype=float)
-    if not np.all((t >= 253.15) & (t <= 423.15) & (s >= 0.015) & (s <= 0.08)):
+    if not np.all((t >= 233.15) & (t <= 473.15) & (s >= 0.015) & (s <= 0.08)):
         raise OutOfRangeError(
-            f"surface_tension is used from 253 K to 423 K and 0.015-0.08 N/m; got "
+            f"surface_tension is used from 233 K to 473 K and 0.015-0.08 N/m; got "
             f"{temperature!r} K, {tension_20!r} N/m"
         )
     return np.asarray(s + TENSION_SLOPE * (t - 293.15))
