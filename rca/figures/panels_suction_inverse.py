@@ -69,7 +69,7 @@ def _resistances(inverse: Inverse) -> Panel:
         status = "not assessed"
     else:
         answer = " ".join(_change_words(t) for t in moved) or (
-            "None of the four changed beyond its interval over the record."
+            "No part of the loss changed beyond its interval over the record."
         )
         status = "not identifiable" if unclear else "identified"
         if unclear:
