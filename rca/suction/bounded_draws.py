@@ -27,24 +27,50 @@ def bounded_mixture(
     Each component counts with its share of the allowed region (A. Genz's integration, as in
     scipy). Gibbs sampling along the principal axes, so that collinear coordinates do not slow it.
     """
-    shares = np.array(
-        [
-            w * _allowed(m[bounded], c[np.ix_(bounded, bounded)], rng)
-            for w, m, c in zip(weights, means, covariances, strict=True)
-        ]
+    draws, distances, active = bounded_mixtures(
+        weights, means[None], covariances[None], bounded, number, rng
     )
-    shares = shares / shares.sum() if shares.sum() > 0.0 else weights
-    parts, distances, active = [], [], np.zeros(bounded.size)
-    for share, mean, covariance, n in zip(
-        shares, means, covariances, rng.multinomial(number, shares), strict=True
-    ):
-        if not n:
-            continue
-        draws, distance, on_bound = _bounded(mean, covariance, bounded, int(n), rng)
-        parts.append(draws)
-        distances.append(share * distance)
-        active += share * on_bound
-    return np.concatenate(parts), float(np.sum(distances)), active > 0.5
+    return draws[0], float(distances[0]), np.asarray(active[0])
+
+
+def bounded_mixtures(
+    weights: FloatArray,
+    means: FloatArray,
+    covariances: FloatArray,
+    bounded: Mask,
+    number: int,
+    rng: np.random.Generator,
+) -> tuple[FloatArray, FloatArray, npt.NDArray[np.bool_]]:
+    """The same for K mixtures that share their weights: ``means`` (K, G, D) and so on.
+
+    Returns draws (K, number, D), distances (K,) and coordinates on their bound (K, D).
+    """
+    k, g, d = means.shape
+    flat_means, flat = means.reshape(-1, d), covariances.reshape(-1, d, d)
+    corner = np.ix_(bounded, bounded)
+    pairs = zip(flat_means, flat, strict=True)
+    allowed = np.array([_allowed(m[bounded], c[corner], rng) for m, c in pairs]).reshape(k, g)
+    shares = allowed * weights
+    total = shares.sum(axis=1, keepdims=True)
+    shares = np.where(total > 0.0, shares / np.where(total > 0.0, total, 1.0), weights)
+    chains = -(-number // KEPT)
+    edges = np.floor(np.cumsum(shares, axis=1) * chains + rng.random((k, 1)))
+    edges[:, -1] = chains  # every component within one chain of its share
+    counts = np.diff(np.minimum(edges, chains), axis=1, prepend=0.0).astype(np.int64)
+    values, vectors = np.linalg.eigh(flat)
+    roots = vectors * np.sqrt(np.maximum(values, 1e-14 * values[:, -1:]))[:, None, :]
+    starts = np.array(
+        [_most_probable(m, r, bounded) for m, r in zip(flat_means, roots, strict=True)]
+    )
+    which = np.repeat(np.arange(k * g), counts.ravel())
+    draws = _chains(flat_means[which], roots[which], starts[which], bounded, rng)
+    draws = draws.reshape(KEPT, k, chains, d).transpose(1, 2, 0, 3).reshape(k, -1, d)[:, :number]
+    points = flat_means + np.einsum("cij,cj->ci", roots, starts)
+    scale = np.sqrt(np.diagonal(flat, axis1=1, axis2=2))
+    on_bound = bounded & (points < 1e-3 * scale) & (flat_means < 0.0)
+    active = np.einsum("kg,kgd->kd", shares, on_bound.reshape(k, g, d).astype(float)) > 0.5
+    distance = (shares * np.linalg.norm(starts, axis=1).reshape(k, g)).sum(axis=1)
+    return np.asarray(draws), np.asarray(distance), np.asarray(active)
 
 
 def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator) -> float:
@@ -58,38 +84,37 @@ def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator)
             cov=covariance,
             allow_singular=True,
             maxpts=500 * mean.size,
+            abseps=0.003,
+            releps=0.03,
             rng=rng,
         )
     )
 
 
-def _bounded(
-    mean: FloatArray, covariance: FloatArray, bounded: Mask, number: int, rng: np.random.Generator
-) -> tuple[FloatArray, float, Mask]:
-    values, vectors = np.linalg.eigh(covariance)
-    root = vectors * np.sqrt(np.maximum(values, 1e-14 * values[-1]))  # columns: principal axes
-    start = _most_probable(mean, root, bounded)
-    z = np.repeat(start[None, :], -(-number // KEPT), axis=0)
-    rows, base = root[bounded], mean[bounded]
-    room = base + z @ rows.T  # value of each bounded coordinate, (chains, bounds)
+def _chains(
+    means: FloatArray,
+    roots: FloatArray,
+    starts: FloatArray,
+    bounded: Mask,
+    rng: np.random.Generator,
+) -> FloatArray:
+    """Gibbs chains side by side, one a row of ``means``; draws (KEPT, chains, D)."""
+    z = starts.copy()
+    rows = roots[:, bounded, :]  # (chains, bounds, D)
+    room = means[:, bounded] + np.einsum("cbd,cd->cb", rows, z)
     kept = []
     for sweep in range(BURN_IN + KEPT):
-        for axis in range(mean.size):
-            slope = rows[:, axis]
+        for axis in range(means.shape[1]):
+            slope = rows[:, :, axis]
             rest = room - z[:, axis, None] * slope
             edge = -rest / np.where(slope == 0.0, np.nan, slope)
-            up = slope > 0.0
-            low = edge[:, up].max(axis=1, initial=-np.inf)
-            high = edge[:, slope < 0.0].min(axis=1, initial=np.inf)
+            low = np.where(slope > 0.0, edge, -np.inf).max(axis=1, initial=-np.inf)
+            high = np.where(slope < 0.0, edge, np.inf).min(axis=1, initial=np.inf)
             z[:, axis] = _between(low, np.maximum(low, high), rng)
             room = rest + z[:, axis, None] * slope
         if sweep >= BURN_IN:
-            kept.append(z.copy())
-    z = np.concatenate(kept)[:number]
-    point = mean + root @ start
-    scale = np.sqrt(np.diag(covariance))
-    on_bound = bounded & (point < 1e-3 * scale) & (mean < 0.0)
-    return mean + z @ root.T, float(np.linalg.norm(start)), on_bound
+            kept.append(means + np.einsum("cij,cj->ci", roots, z))
+    return np.array(kept)
 
 
 def _most_probable(mean: FloatArray, root: FloatArray, bounded: Mask) -> FloatArray:

@@ -18,7 +18,7 @@ import numpy.typing as npt
 from rca.case.model import Case
 from rca.case.series import AlignedRecord
 from rca.physics.viscosity import kinematic_viscosity
-from rca.suction.bounded_draws import bounded_mixture
+from rca.suction.bounded_draws import bounded_mixture, bounded_mixtures
 from rca.suction.breathing import Breathing, breathing
 from rca.suction.budget import fluid_viscosities, oil_density, pump_flow
 from rca.suction.clean_line import CleanLine, Excitation, clean_line
@@ -271,8 +271,18 @@ def _tracks(fit: VaryingFit, prior: FloatArray, rng: np.random.Generator) -> dic
     p, knots = len(NAMES), fit.knots.size
     sums = np.array([1.0, 1.0, 1.0, -1.0])
     rows: dict[str, list[tuple[float, ...]]] = {name: [] for name in (*NAMES, "total")}
+    bounded = np.array([name != "offset" for name in NAMES])
+    places = np.arange(knots)[:, None] * p + np.arange(p)
+    draws, _, _ = bounded_mixtures(
+        fit.weights,
+        fit.means[:, places].transpose(1, 0, 2),
+        fit.covariances[:, places[:, :, None], places[:, None, :]].transpose(1, 0, 2, 3),
+        bounded,
+        TRACK_DRAWS,
+        rng,
+    )
     for k in range(knots):
-        after, _, _ = _bounded_at(fit, np.arange(k * p, (k + 1) * p), TRACK_DRAWS, rng)
+        after = draws[k]
         before = prior[:, k][(prior[:, k, :3] >= 0.0).all(axis=1)]
         for name, a, b in zip(
             (*NAMES, "total"),
