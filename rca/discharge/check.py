@@ -108,7 +108,7 @@ def _assemble(
     hot = hot_status(possible, indeterminate)
     fuel = fuel_path(
         case, flash_point=flash_point, pressure=drawn.discharge, wall=coarse.wall,
-        unit=drawn.spare,
+        unit=drawn.spare, inlet=(t, p1),
     )  # fmt: skip
     air = (released_air or 0.0) + (USUAL_CARRIED_AIR if carried_air is None else carried_air)
     if carried_air is None:

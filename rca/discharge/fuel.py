@@ -10,6 +10,12 @@ from rca.discharge.inputs import spread
 from rca.discharge.model import FuelPath, Status
 from rca.physics.compression import UNIVERSAL_GAS_CONSTANT
 from rca.physics.fluid_class import class_values
+from rca.physics.vapour import (
+    LEAN_SHARE,
+    class_vapour_pressure,
+    stoichiometric_drop_ratio,
+    vapour_equivalence,
+)
 from rca.suction.budget import fluid_class_name
 
 Floats = npt.NDArray[np.float64]
@@ -60,15 +66,19 @@ def fuel_path(
     pressure: Floats,
     wall: Floats,
     unit: Floats,
+    inlet: tuple[float, float] | None = None,
 ) -> FuelPath:
     """Judge the paths by which fuel could meet the hot gas.
 
     ``pressure`` and ``wall`` [Pa abs, K]: discharge pressure and peak wall temperature of each
-    sample; ``unit``: two columns of uniform numbers for heat of vaporisation and enhancement.
+    sample; ``unit``: two columns of uniform numbers for heat of vaporisation and enhancement;
+    ``inlet``: temperature and pressure [K, Pa abs] at the inlet, for the vapour that is there from
+    the start.
     Liquid thrown into the gas (break-up, jets, foam films) can't be computed from a case folder:
     it keeps the answer at "not excluded" and never makes it "supported".
     """
-    values = class_values(fluid_class_name(case))
+    name = fluid_class_name(case)
+    values = class_values(name)
     if not values.flammable_vapour:
         return FuelPath(
             status=Status.EXCLUDED, flash_point=None, lean_limit=None, margin=None, vapour=0.0,
@@ -86,13 +96,42 @@ def fuel_path(
     margin = limit - wall
     u = flash.u if flash.u is not None else MEASURED_FLASH_SPREAD
     vapour = _share_below_zero(margin, u)
+    measured = None if flash.origin is Origin.DEFAULT else flash.value
+    phi, drop = _at_the_inlet(name, measured, inlet) if inlet is not None else (None, None)
     return FuelPath(
         status=Status.SUPPORTED if vapour >= LIKELY else Status.NOT_EXCLUDED,
         flash_point=flash,
         lean_limit=spread(limit),
         margin=spread(margin),
         vapour=vapour,
-        reasons=_reasons(vapour, case),
+        reasons=(*_lean_words(phi, drop), *_reasons(vapour, case)),
+        inlet_phi=phi,
+        drop=drop,
+    )
+
+
+def _at_the_inlet(
+    name: str, flash_point: float | None, inlet: tuple[float, float]
+) -> tuple[tuple[float, float, float], float]:
+    """Equivalence ratio of the saturated vapour, and the drop that would be fuel enough."""
+    temperature, pressure = inlet
+    low, middle, high = (
+        float(vapour_equivalence(p, pressure))
+        for p in class_vapour_pressure(name, temperature, flash_point=flash_point)
+    )
+    return (low, middle, high), float(stoichiometric_drop_ratio(pressure, temperature))
+
+
+def _lean_words(phi: tuple[float, float, float] | None, drop: float | None) -> tuple[str, ...]:
+    if phi is None or drop is None:
+        return ()
+    if phi[2] >= LEAN_SHARE:
+        return ("Vapour saturated at the inlet may already be rich enough to burn.",)
+    least, most = (float(f"{LEAN_SHARE / p:.1g}") for p in (phi[2], phi[0]))
+    return (
+        f"The vapour that is in the bubble from the start is some {least:,.0f} to {most:,.0f} "
+        f"times too lean. One oil drop of {drop:.1%} of the bubble's diameter would be fuel "
+        "enough.",
     )
 
 
@@ -114,7 +153,7 @@ def _reasons(vapour: float, case: Case) -> tuple[str, ...]:
         words.append("Vapour from the bubble's wall reaches the lean limit.")
     hot = case.fluid.temperature
     if hot is not None and hot.value > HOT_OIL:
-        words.append("The oil itself is above 150 degC.")
+        words.append("The oil itself is above 150 °C.")
     words.append(
         "Liquid thrown into the gas (break-up of coarse bubbles, foam films, trapped pockets) "
         "would serve as fuel; nothing in a case folder shows or excludes it."

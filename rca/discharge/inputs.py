@@ -74,11 +74,11 @@ def gather(
     assumed: list[str] = []
     if inlet is None:
         inlet = 0.92 * local_atmosphere(case), 0.06 * local_atmosphere(case)
-        assumed.append("inlet pressure 8 % below the atmosphere, +/- 6 %")
+        assumed.append("inlet pressure 8 % below the atmosphere, ± 6 %")
     temperature = case.fluid.temperature
     if temperature is None:
         temperature = Reading(value=323.15, unit="K", u=8.0, origin=Origin.ASSUMED)
-        assumed.append("oil at 50 degC, +/- 8 K")
+        assumed.append("oil at 50 °C, ± 8 K")
     rise = rise_time(case, discharge, bursts)
     if not rise.measured:
         assumed.append(f"pressure rise: {rise.basis}")

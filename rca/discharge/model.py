@@ -55,6 +55,11 @@ class FuelPath:
     margin: Spread | None  # [K], that less the wall's peak temperature
     vapour: float  # P(vapour from the wall reaches the lean limit)
     reasons: tuple[str, ...]
+    # equivalence ratio of saturated vapour at the inlet, 5, 50 and 95 % [-]; None if not asked
+    inlet_phi: tuple[float, float, float] | None = None
+    drop: float | None = (
+        None  # diameter of the oil drop that is fuel enough, over the bubble's [-]
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

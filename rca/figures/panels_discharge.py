@@ -263,7 +263,7 @@ def _fuel(fuel: FuelPath) -> Panel:
             f"{celsius(fuel.lean_limit.p50)} ({celsius(fuel.lean_limit.p05)} to "
             f"{celsius(fuel.lean_limit.p95)}) for an ignitable vapour at the discharge pressure; "
             f"it falls short by {fuel.margin.p50:.0f} K ({fuel.margin.p05:.0f} to "
-            f"{fuel.margin.p95:.0f} K). Probability that vapour suffices: {fuel.vapour:.1%}.",
+            f"{fuel.margin.p95:.0f} K). Probability that vapour suffices: {_small(fuel.vapour)}.",
         )
     return Panel(
         key="discharge.fuel",
@@ -280,6 +280,10 @@ def _fuel(fuel: FuelPath) -> Panel:
         ),
         card=FUEL_CARD,
     )
+
+
+def _small(share: float) -> str:
+    return "under 0.1 %" if share < 0.001 else f"{share:.1%}"
 
 
 def _ignition(check: DischargeCheck) -> Panel:

@@ -43,6 +43,7 @@ _CLASSES: Final[dict[str, VapourClass]] = {
     "ester": VapourClass(lean_limit=0.0035, vaporisation=115e3, log_spread=2.0),
     "phosphate ester": VapourClass(lean_limit=0.0060, vaporisation=105e3, log_spread=2.0),
 }
+_USUAL_REACH = 1 / 323.15 - 1 / 488.15  # [1/K], from 50 degC to a mineral oil's flash point
 WATER_ACTIVITY = (0.70, 0.80, 0.88)  # of water glycol with 35-50 % water; common practice
 
 
@@ -69,8 +70,8 @@ def vapour_pressure_from_flash(
 ) -> Floats:
     """Vapour pressure [Pa] anchored at the flash point; inputs broadcast.
 
-    p = LEL 101325 exp[-(dH/R)(1/T - 1/T_flash)]; ``temperature`` [K] 250-650, ``flash_point`` [K]
-    300-650 (closed cup; an open cup reads 5-15 K higher and makes the pressure err low by a
+    p = LEL 101325 exp[-(dH/R)(1/T - 1/T_flash)]; ``temperature`` [K] 230-750, ``flash_point`` [K]
+    230-750 (closed cup; an open cup reads 5-15 K higher and makes the pressure err low by a
     third to a half), ``lean_limit`` mole fraction [-], ``vaporisation`` [J/mol]. Within a factor
     of two at the anchor (pure n-alkanes), within a factor of ten 150 K away.
     Source: Clausius-Clapeyron identity; definition of the flash point.
@@ -80,12 +81,12 @@ def vapour_pressure_from_flash(
         np.asarray(x, dtype=float) for x in (temperature, flash_point, lean_limit, vaporisation)
     )
     inside = (
-        (t >= 250) & (t <= 650) & (flash >= 300) & (flash <= 650)
+        (t >= 230) & (t <= 750) & (flash >= 230) & (flash <= 750)
         & (lean > 0) & (lean < 0.2) & (heat >= 2e4) & (heat <= 2e5)
     )  # fmt: skip
     if not np.all(inside):
         raise OutOfRangeError(
-            "vapour_pressure_from_flash needs 250-650 K, a flash point of 300-650 K, a lean limit "
+            "vapour_pressure_from_flash needs 230-750 K, a flash point of 230-750 K, a lean limit "
             f"of 0-0.2 and 20-200 kJ/mol; got {temperature!r} K, {flash_point!r} K, "
             f"{lean_limit!r}, {vaporisation!r}"
         )
@@ -115,7 +116,7 @@ def class_vapour_pressure(
     middle = vapour_pressure_from_flash(
         temperature, flash, lean_limit=kind.lean_limit, vaporisation=kind.vaporisation
     )
-    away = np.abs(1 / np.asarray(temperature, dtype=float) - 1 / flash) / (1 / 323.15 - 1 / flash)
+    away = np.abs(1 / np.asarray(temperature, dtype=float) - 1 / flash) / _USUAL_REACH
     spread = 0.3 + kind.log_spread * (0.5 if flash_point is not None else 1.0) * away
     grow = np.exp(1.6449 * spread)
     return np.asarray(middle / grow), middle, np.asarray(middle * grow)

@@ -289,3 +289,19 @@ def test_extreme_machines_get_an_answer(small_case, inlet, more):
     assert (violent > 0) is (inlet[0] < 0.5e5)
     if found.discharge_pressure.value > 450e5:
         assert any("450 bar" in words for words in found.assumed)
+
+
+def test_an_oil_full_of_petrol_still_gets_an_answer(small_case):
+    found = check(small_case, flash_point=reading(278.0, "K", 6.0))
+    assert found.fuel.status is Status.SUPPORTED
+    assert found.fuel.inlet_phi[1] > 0.55
+
+
+@pytest.mark.outside_value(
+    source="n-eicosane to n-octacosane at 50 degC and 1 bar: vapour four to seven decades too "
+    "lean; drop of 0.044 of the bubble's diameter stoichiometric at 1 bar"
+)
+def test_vapour_of_a_clean_oil_is_far_too_lean(small_case):
+    found = check(small_case, inlet=(1e5, 0.03e5)).fuel
+    assert 1e-7 < found.inlet_phi[1] / 0.55 < 1e-4
+    assert found.drop == pytest.approx(0.0438, rel=0.02)

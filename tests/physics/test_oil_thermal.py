@@ -207,3 +207,13 @@ def test_refusals() -> None:
     for bad in calls:
         with pytest.raises(OutOfRangeError):
             bad()
+
+
+def test_spread_of_the_vapour_pressure_grows_away_from_the_flash_point() -> None:
+    def width(t: float, flash: float) -> float:
+        low, _, high = class_vapour_pressure("mineral", t, flash_point=flash)
+        return float(high / low)
+
+    assert width(323.15, 488.15) > width(423.15, 488.15) > width(488.0, 488.15) > 1.0
+    for flash in (300.0, 323.15, 350.0):  # diluted with fuel
+        assert width(323.15, flash) > 1.0
