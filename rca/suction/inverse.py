@@ -26,6 +26,7 @@ from rca.suction.priors import NOTICED, priors_of, told_by_breathing
 from rca.suction.rows import Rows, SetAside, suction_rows
 from rca.suction.spread import Spread, spread
 from rca.suction.state import usable_temperature
+from rca.suction.thermal_lag import thermometer_lag, with_lag
 from rca.suction.varying_fit import Prior, VaryingFit, fit_varying
 
 FloatArray = npt.NDArray[np.float64]
@@ -89,6 +90,7 @@ class Inverse:
     level_stated: bool
     headspace_known: bool
     headspace_drop: float | None  # [Pa], recorded air minus head space, end of the record
+    thermometer_lag: float  # [s], by which the temperature is taken later; 0: none found
     breathing: Breathing | None  # None where no swing of the level is on record
     contradicted: tuple[str, ...]  # unknowns the record asks to be negative
     remarks: tuple[str, ...] = ()
@@ -126,6 +128,9 @@ def estimate_resistances(
     viscosities = fluid_viscosities(case)
     assert viscosities is not None  # rows exist
     nu, rho = float(kinematic_viscosity(temperature, *viscosities)), oil_density(case, temperature)
+    lag = thermometer_lag(case, aligned, lambda r: regressors(r, flow, nu, rho))
+    moved = suction_rows(case, with_lag(aligned, lag)) if lag else rows
+    rows = rows if isinstance(moved, str) else moved
     x = regressors(rows, flow, nu, rho)
     y = rows.pressure - rows.still
     knots = _knots(rows)
@@ -166,9 +171,10 @@ def estimate_resistances(
         level_stated=rows.level_stated,
         headspace_known=rows.headspace_known,
         headspace_drop=rows.headspace_drop,
+        thermometer_lag=lag,
         breathing=breath,
         contradicted=contradicted,
-        remarks=_remarks(rows, aside),
+        remarks=_remarks(rows, aside, lag),
     )
     return inverse, InverseDraws(first=first, last=last, fit=fit, rows=rows, regressors=x)
 
@@ -213,14 +219,15 @@ def _ends(
 ) -> tuple[FloatArray, FloatArray, tuple[str, ...]]:
     """Draws at the first and the last knot, losses and depression not negative at both.
 
-    Where the record asks for a negative one beyond three standard deviations, it is named.
+    Where the record asks for a negative one, beyond three standard deviations and NOTICED, it is
+    named.
     """
     p, last = len(NAMES), fit.knots.size - 1
     places = np.r_[0:p, last * p : (last + 1) * p] if last else np.arange(p)
-    draws, distance, active = _bounded_at(fit, places, DRAWS, rng)
-    below = np.atleast_1d(active.reshape(-1, p).any(axis=0))
-    named = tuple(n for n, bad in zip(NAMES, below, strict=True) if bad)
-    contradicted = (named or ("the sum of the losses",)) if distance > CONTRADICTION else ()
+    draws, distance, _ = _bounded_at(fit, places, DRAWS, rng)
+    asked = (fit.weights @ fit.means[:, places]).reshape(-1, p).min(axis=0)
+    named = tuple(n for n, v in zip(NAMES, asked, strict=True) if v < -NOTICED and n != "offset")
+    contradicted = named if distance > CONTRADICTION else ()
     return draws[:, :p], draws[:, -p:], contradicted
 
 
@@ -339,13 +346,19 @@ def _correlation(last: FloatArray) -> tuple[tuple[str, str, float], ...]:
     )
 
 
-def _remarks(rows: Rows, aside: SetAside) -> tuple[str, ...]:
+def _remarks(rows: Rows, aside: SetAside, lag: float) -> tuple[str, ...]:
     said = []
     turning = int(rows.running.sum()) + aside.starved
     if aside.starved:
         said.append(
             f"{aside.starved} of {turning} running bins lie below 0.25 bar(a), where the flow is "
             "no longer the displacement; they are left out, so the highest losses are too."
+        )
+    if lag:
+        said.append(
+            f"By the fit the oil thermometer runs {abs(lag) / 60:.0f} min "
+            f"{'behind' if lag > 0 else 'ahead of'} the oil in the line; the temperature is taken "
+            f"that much {'later' if lag > 0 else 'earlier'}."
         )
     if aside.reversed:
         said.append(f"{aside.reversed} bins with the shaft or the flow reversed are left out.")
