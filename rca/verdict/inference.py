@@ -1,21 +1,27 @@
 """Exact inference by variable elimination, many evidence settings or number sets at once.
 
 A factor is an array over its variables with a leading batch axis of length 1 or B, so that one
-pass answers B questions of the same structure. The order of elimination depends on the structure
-alone and is kept. Inside, the batch runs along the last axis: products then work on long rows.
+pass answers B questions of the same structure. The plan (order of elimination, which tables are
+multiplied first, where each entry goes) depends on the structure alone and is kept.
 """
 
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
+from math import prod
 
 import numpy as np
 import numpy.typing as npt
 
+from rca.verdict.kernel import WIDTH, run_steps
+
 FloatArray = npt.NDArray[np.float64]
+IntArray = npt.NDArray[np.int64]
+PlaceArray = npt.NDArray[np.int32]
 Scopes = tuple[tuple[str, ...], ...]
 Sizes = tuple[tuple[str, int], ...]
-SMALL = 1e-30  # tables whose largest entry is below are scaled up
+Table = tuple[tuple[str, ...], int]  # scope and offset
+WORTH = 0.5  # two tables are multiplied first where their product is at most this share of all
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,85 +32,146 @@ class Factor:
     table: FloatArray
 
 
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """Steps for the kernel; see ``run_steps`` for the rows."""
+
+    entries: int  # of all tables together
+    given: tuple[int, ...]  # offsets of the given tables
+    result: int  # offset of the last table
+    shape: tuple[int, ...]
+    steps: IntArray
+    inputs: IntArray
+    maps: PlaceArray
+
+
 def joint(factors: Sequence[Factor], wanted: Sequence[str], *, scaled: bool = True) -> FloatArray:
     """Unnormalised joint of the wanted variables, in their order; axis 0 is the batch.
 
-    Eliminates every other variable, cheapest next (smallest resulting table). Exact. ``scaled``:
-    members of the batch may be scaled by themselves, so only ratios within one member have a
-    meaning; without it all members share one scale.
+    Eliminates every other variable, cheapest next. Exact. ``scaled``: members of the batch may be
+    scaled by themselves, so only ratios within one member have a meaning; without it all members
+    share one scale.
     """
     sizes = {n: f.table.shape[i + 1] for f in factors for i, n in enumerate(f.names)}
-    pool = [Factor(f.names, np.ascontiguousarray(np.moveaxis(f.table, 0, -1))) for f in factors]
-    order = elimination_order(
-        tuple(f.names for f in factors), tuple(sorted(sizes.items())), tuple(wanted)
-    )
-    for name in order:
-        mine = [f for f in pool if name in f.names]
-        pool = [f for f in pool if name not in f.names]
-        product = _multiply(mine)
-        axis = product.names.index(name)
-        rest = tuple(n for n in product.names if n != name)
-        pool.append(Factor(rest, _rescaled(product.table.sum(axis=axis), each=scaled)))
-    product = _multiply(pool, tuple(wanted))
-    shape = (*(sizes[n] for n in wanted), product.table.shape[-1])
-    return np.moveaxis(np.broadcast_to(product.table, shape), -1, 0)
+    plan = plan_of(tuple(f.names for f in factors), tuple(sorted(sizes.items())), tuple(wanted))
+    batch = max((f.table.shape[0] for f in factors), default=1)
+    columns = [f.table.reshape(f.table.shape[0], -1).T for f in factors]
+    out = np.empty((batch, prod(plan.shape)))
+    logs = np.empty(batch)
+    buffer = np.ones((plan.entries, WIDTH))
+    for start in range(0, batch, WIDTH):
+        members = slice(start, min(start + WIDTH, batch))
+        width = members.stop - members.start
+        for offset, table in zip(plan.given, columns, strict=True):
+            part = table if table.shape[1] == 1 else table[:, members]
+            buffer[offset : offset + table.shape[0], :width] = part
+        logs[members] = run_steps(buffer, plan.steps, plan.inputs, plan.maps)[:width]
+        out[members] = buffer[plan.result : plan.result + out.shape[1], :width].T
+    if not scaled:
+        out *= np.exp(logs - logs.max())[:, None]
+    return out.reshape(batch, *plan.shape)
 
 
-@lru_cache(maxsize=256)
-def elimination_order(scopes: Scopes, sizes: Sizes, wanted: tuple[str, ...]) -> tuple[str, ...]:
-    """The hidden variables, cheapest next; ties by name."""
-    size = dict(sizes)
-    pool = [frozenset(s) for s in scopes]
-    hidden = set(size) - set(wanted)
-    order = []
-    while hidden:
-        best = min(sorted(hidden), key=lambda n: _cost(pool, n, size))
-        joined = frozenset().union(*(s for s in pool if best in s)) - {best}
-        pool = [s for s in pool if best not in s]
-        pool.append(joined)
-        hidden.remove(best)
-        order.append(best)
-    return tuple(order)
+@lru_cache(maxsize=128)
+def plan_of(scopes: Scopes, sizes: Sizes, wanted: tuple[str, ...]) -> Plan:
+    """The plan of one structure."""
+    return _Planner(scopes, dict(sizes)).plan(wanted)
 
 
-def _cost(pool: Sequence[frozenset[str]], name: str, size: dict[str, int]) -> int:
-    cost = 1
-    for n in frozenset().union(*(s for s in pool if name in s)) - {name}:
-        cost *= size[n]
-    return cost
+class _Planner:
+    """Builds the steps; a table is its scope and its offset."""
 
+    def __init__(self, scopes: Scopes, size: dict[str, int]) -> None:
+        self.size = size
+        self.entries = 0
+        self.pool = [(scope, self._room(scope)) for scope in scopes]
+        self.given = tuple(offset for _, offset in self.pool)
+        self.steps: list[tuple[int, int, int, int, int]] = []
+        self.inputs: list[tuple[int, int]] = []
+        self.maps: list[PlaceArray] = []
+        self.mapped = 0
 
-def _multiply(factors: Sequence[Factor], names: tuple[str, ...] = ()) -> Factor:
-    """The product over the union of the variables; the batch is the last axis.
+    def plan(self, wanted: tuple[str, ...]) -> Plan:
+        """Eliminate all but the wanted variables, then multiply what is left."""
+        hidden = set(self.size) - set(wanted)
+        while hidden:
+            name = min(sorted(hidden), key=self._cost)
+            hidden.remove(name)
+            mine = [t for t in self.pool if name in t[0]]
+            self.pool = [t for t in self.pool if name not in t[0]]
+            rest = tuple(sorted(set().union(*(t[0] for t in mine)) - {name}))
+            self.pool.append(self._step(self._merged(mine), rest, name))
+        _, result = self._step(self._merged(self.pool), wanted, None)
+        return Plan(
+            entries=self.entries,
+            given=self.given,
+            result=result,
+            shape=tuple(self.size[n] for n in wanted),
+            steps=np.array(self.steps, dtype=np.int64),
+            inputs=np.array(self.inputs, dtype=np.int64),
+            maps=np.concatenate(self.maps),
+        )
 
-    Small tables first, so that most products are taken while the table is still small.
-    """
-    names = names or tuple(dict.fromkeys(n for f in factors for n in f.names))
-    tables = sorted((_spread(f, names) for f in factors), key=lambda t: t.size)
-    total = np.ones((*(1 for _ in names), 1)) if not tables else tables[0]
-    for table in tables[1:]:
-        total = total * table
-    return Factor(names, total)
+    def _room(self, scope: Sequence[str]) -> int:
+        offset = self.entries
+        self.entries += prod(self.size[n] for n in scope)
+        return offset
 
+    def _cost(self, name: str) -> int:
+        union = set().union(*(scope for scope, _ in self.pool if name in scope)) - {name}
+        return prod(self.size[n] for n in union)
 
-def _spread(factor: Factor, names: tuple[str, ...]) -> FloatArray:
-    """A factor's table with its axes in the order of ``names`` and length 1 for the others."""
-    if not factor.names:
-        return factor.table.reshape((*(1 for _ in names), -1))
-    present = [n for n in names if n in factor.names]
-    axes = [*(factor.names.index(n) for n in present), len(factor.names)]
-    table = np.transpose(factor.table, axes)
-    lengths = iter(table.shape)
-    shape = [*(next(lengths) if n in factor.names else 1 for n in names), table.shape[-1]]
-    return table.reshape(shape)
+    def _merged(self, tables: list[Table]) -> list[Table]:
+        """Small tables multiplied first, where that saves work in the step that follows."""
+        left = list(tables)
+        whole = prod(self.size[n] for n in set().union(*(t[0] for t in left)))
+        while len(left) > 2:
+            pairs = [
+                (prod(self.size[n] for n in set(a[0]) | set(b[0])), i, j)
+                for i, a in enumerate(left)
+                for j, b in enumerate(left)
+                if i < j
+            ]
+            cost, i, j = min(pairs)
+            if cost > WORTH * whole:
+                break
+            second, first = left.pop(j), left.pop(i)
+            scope = tuple(sorted(set(first[0]) | set(second[0])))
+            left.append(self._step([first, second], scope, None))
+        return left
 
+    def _step(
+        self,
+        tables: list[Table],
+        scope: tuple[str, ...],
+        summed: str | None,
+    ) -> Table:
+        """One step of the kernel: a product over ``scope``, with one variable summed out."""
+        axes = (*scope, *((summed,) if summed is not None else ()))
+        shape = [self.size[n] for n in axes]
+        first = len(self.inputs)
+        for names, offset in tables:
+            self.inputs.append((offset, self.mapped))
+            places = self._places(names, axes, shape)
+            self.maps.append(places)
+            self.mapped += places.size
+        states = self.size[summed] if summed is not None else 1
+        start = self._room(scope)
+        entries = prod(self.size[n] for n in scope)
+        self.steps.append((start, entries, states, first, len(tables)))
+        return scope, start
 
-def _rescaled(table: FloatArray, *, each: bool) -> FloatArray:
-    """Divided by the largest entry where that is small, so that no product underflows.
-
-    ``each``: every batch member by its own. Scales cancel in every normalised answer.
-    """
-    top = table.max(axis=tuple(range(table.ndim - 1)) if each else None, keepdims=True)
-    if float(top.min()) > SMALL:
-        return table
-    return np.asarray(table / np.where(top > 0, top, 1.0))
+    def _places(
+        self, names: tuple[str, ...], axes: tuple[str, ...], shape: list[int]
+    ) -> PlaceArray:
+        """For each entry over ``axes`` the place in a table over ``names``."""
+        total = np.zeros(shape, dtype=np.int32)
+        stride = 1
+        for name in reversed(names):
+            along = [1] * len(axes)
+            along[axes.index(name)] = self.size[name]
+            total = total + np.int32(stride) * np.arange(self.size[name], dtype=np.int32).reshape(
+                along
+            )
+            stride *= self.size[name]
+        return total.ravel()

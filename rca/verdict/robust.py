@@ -1,6 +1,7 @@
 """How far the verdict depends on single items, on the numbers and on the method."""
 
 from collections.abc import Mapping, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from itertools import combinations
 
 import numpy as np
@@ -17,6 +18,7 @@ from rca.verdict.side import HELD, side_of
 
 FloatArray = npt.NDArray[np.float64]
 DRAWS = 2048
+THREADS = 2
 CHUNK = 128  # draws a pass; tables of a pass stay in the processor's cache
 MOST_REMOVED = 3  # items taken out together in the search for a flip, among the ...
 HEAVIEST = 12  # ... items that move the odds most
@@ -81,7 +83,8 @@ def _drawn(
         same = sum(found.side(groups, n)[0] == side for n in range(chunk))
         return found.suction, found.discharge, same
 
-    blocks = [block(start) for start in range(0, count, chunk)]
+    with ThreadPoolExecutor(THREADS) as pool:  # the kernel runs without the interpreter's lock
+        blocks = list(pool.map(block, range(0, count, chunk)))
     suction = np.concatenate([s for s, _, _ in blocks])
     discharge = np.concatenate([d for _, d, _ in blocks])
     return suction, discharge, sum(n for _, _, n in blocks) / count
