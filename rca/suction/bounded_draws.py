@@ -18,19 +18,19 @@ def bounded_mixture(
     bounded: Mask,
     number: int,
     rng: np.random.Generator,
-) -> tuple[FloatArray, float, Mask]:
+) -> tuple[FloatArray, float]:
     """Draws of a Gaussian mixture given that the ``bounded`` coordinates are not negative.
 
-    ``weights`` (G,), ``means`` (G, D), ``covariances`` (G, D, D); returns draws (number, D), the
-    distance of the most probable allowed point from the unbounded mean in standard deviations
-    (above three, the data contradict the bounds), and which coordinates sit on their bound there.
+    ``weights`` (G,), ``means`` (G, D), ``covariances`` (G, D, D); returns draws (number, D) and
+    the distance of the most probable allowed point from the unbounded mean in standard deviations
+    (above three, the data contradict the bounds).
     Each component counts with its share of the allowed region (A. Genz's integration, as in
     scipy). Gibbs sampling along the principal axes, so that collinear coordinates do not slow it.
     """
-    draws, distances, active = bounded_mixtures(
+    draws, distances = bounded_mixtures(
         weights, means[None], covariances[None], bounded, number, rng
     )
-    return draws[0], float(distances[0]), np.asarray(active[0])
+    return draws[0], float(distances[0])
 
 
 def bounded_mixtures(
@@ -40,10 +40,10 @@ def bounded_mixtures(
     bounded: Mask,
     number: int,
     rng: np.random.Generator,
-) -> tuple[FloatArray, FloatArray, npt.NDArray[np.bool_]]:
+) -> tuple[FloatArray, FloatArray]:
     """The same for K mixtures that share their weights: ``means`` (K, G, D) and so on.
 
-    Returns draws (K, number, D), distances (K,) and coordinates on their bound (K, D).
+    Returns draws (K, number, D) and distances (K,).
     """
     k, g, d = means.shape
     flat_means, flat = means.reshape(-1, d), covariances.reshape(-1, d, d)
@@ -65,12 +65,8 @@ def bounded_mixtures(
     which = np.repeat(np.arange(k * g), counts.ravel())
     draws = _chains(flat_means[which], roots[which], starts[which], bounded, rng)
     draws = draws.reshape(KEPT, k, chains, d).transpose(1, 2, 0, 3).reshape(k, -1, d)[:, :number]
-    points = flat_means + np.einsum("cij,cj->ci", roots, starts)
-    scale = np.sqrt(np.diagonal(flat, axis1=1, axis2=2))
-    on_bound = bounded & (points < 1e-3 * scale) & (flat_means < 0.0)
-    active = np.einsum("kg,kgd->kd", shares, on_bound.reshape(k, g, d).astype(float)) > 0.5
     distance = (shares * np.linalg.norm(starts, axis=1).reshape(k, g)).sum(axis=1)
-    return np.asarray(draws), np.asarray(distance), np.asarray(active)
+    return np.asarray(draws), np.asarray(distance)
 
 
 def _allowed(mean: FloatArray, covariance: FloatArray, rng: np.random.Generator) -> float:

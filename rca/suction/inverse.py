@@ -106,9 +106,7 @@ class InverseDraws:
 
     first: FloatArray
     last: FloatArray
-    fit: VaryingFit
     rows: Rows
-    regressors: FloatArray  # (rows, 4)
 
 
 def estimate_resistances(
@@ -176,7 +174,7 @@ def estimate_resistances(
         contradicted=contradicted,
         remarks=_remarks(rows, aside, lag),
     )
-    return inverse, InverseDraws(first=first, last=last, fit=fit, rows=rows, regressors=x)
+    return inverse, InverseDraws(first=first, last=last, rows=rows)
 
 
 def reference_state(case: Case, rows: Rows) -> tuple[float, float]:
@@ -224,25 +222,19 @@ def _ends(
     """
     p, last = len(NAMES), fit.knots.size - 1
     places = np.r_[0:p, last * p : (last + 1) * p] if last else np.arange(p)
-    draws, distance, _ = _bounded_at(fit, places, DRAWS, rng)
-    asked = (fit.weights @ fit.means[:, places]).reshape(-1, p).min(axis=0)
-    named = tuple(n for n, v in zip(NAMES, asked, strict=True) if v < -NOTICED and n != "offset")
-    contradicted = named if distance > CONTRADICTION else ()
-    return draws[:, :p], draws[:, -p:], contradicted
-
-
-def _bounded_at(
-    fit: VaryingFit, places: npt.NDArray[np.int64], number: int, rng: np.random.Generator
-) -> tuple[FloatArray, float, npt.NDArray[np.bool_]]:
-    bounded = places % len(NAMES) != NAMES.index("offset")
-    return bounded_mixture(
+    bounded = places % p != NAMES.index("offset")
+    draws, distance = bounded_mixture(
         fit.weights,
         fit.means[:, places],
         fit.covariances[:, places[:, None], places],
         bounded,
-        number,
+        DRAWS,
         rng,
     )
+    asked = (fit.weights @ fit.means[:, places]).reshape(-1, p).min(axis=0)
+    named = tuple(n for n, v in zip(NAMES, asked, strict=True) if v < -NOTICED and n != "offset")
+    contradicted = named if distance > CONTRADICTION else ()
+    return draws[:, :p], draws[:, -p:], contradicted
 
 
 def _prior_draws(priors: tuple[Prior, ...], knots: int, rng: np.random.Generator) -> FloatArray:
@@ -280,7 +272,7 @@ def _tracks(fit: VaryingFit, prior: FloatArray, rng: np.random.Generator) -> dic
     rows: dict[str, list[tuple[float, ...]]] = {name: [] for name in (*NAMES, "total")}
     bounded = np.array([name != "offset" for name in NAMES])
     places = np.arange(knots)[:, None] * p + np.arange(p)
-    draws, _, _ = bounded_mixtures(
+    draws, _ = bounded_mixtures(
         fit.weights,
         fit.means[:, places].transpose(1, 0, 2),
         fit.covariances[:, places[:, :, None], places[:, None, :]].transpose(1, 0, 2, 3),

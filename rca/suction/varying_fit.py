@@ -51,11 +51,6 @@ class VaryingFit:
     kept: npt.NDArray[np.bool_]  # rows within CLIP
     residual: FloatArray  # all rows, about the mixture's mean
 
-    @property
-    def parameters(self) -> int:
-        """Number of coefficients at one knot."""
-        return int(self.means.shape[1]) // int(self.knots.size)
-
 
 def fit_varying(
     time: FloatArray, y: FloatArray, x: FloatArray, knots: FloatArray, priors: tuple[Prior, ...]

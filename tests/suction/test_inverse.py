@@ -89,7 +89,7 @@ def test_the_regression_refuses_what_is_not_finite() -> None:
 @pytest.mark.parametrize("mean", [1.0, 0.0, -2.0, -6.0])
 def test_draws_at_a_bound_have_the_truncated_moments(mean: float) -> None:
     rng = np.random.default_rng(8)
-    draws, distance, _ = bounded_mixture(
+    draws, distance = bounded_mixture(
         np.ones(1),
         np.array([[mean, 5.0]]),
         np.array([[[1.0, 0.0], [0.0, 4.0]]]),
@@ -109,7 +109,7 @@ def test_two_collinear_losses_share_what_only_their_sum_tells() -> None:
     rng = np.random.default_rng(9)
     wide, narrow = 1e4, 1e-4
     cov = 0.5 * np.array([[wide + narrow, narrow - wide], [narrow - wide, wide + narrow]])
-    draws, distance, _ = bounded_mixture(
+    draws, distance = bounded_mixture(
         np.ones(1), np.array([[40.0, -38.0]]), cov[None], np.array([True, True]), 6000, rng
     )
     assert draws.min() > -1e-6
