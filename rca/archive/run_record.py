@@ -7,7 +7,6 @@ from pathlib import Path
 from typing import Any
 
 from rca.archive.codec import dumps, to_plain
-from rca.archive.edges import edges
 from rca.archive.environment import control, environment, file_digest, hashed
 from rca.archive.quantities import headline, tolerances
 from rca.archive.record import code_files
@@ -31,6 +30,7 @@ def run_record(
     readings: Mapping[str, Mapping[str, Any]],
     options: Mapping[str, Any],
     streams: Mapping[str, Any],
+    notebook_environment: Mapping[str, str],
     fonts: Path,
     started: datetime,
     ended: datetime,
@@ -40,6 +40,8 @@ def run_record(
 
     ``readings`` says for an input file how it was read; ``streams`` the seed of each stage.
     """
+    from rca.archive.edges import edges  # noqa: PLC0415  slow, and wanted at the end only
+
     stable = dict(results["record"])
     return {
         "format": 1,
@@ -53,7 +55,8 @@ def run_record(
         "commit": commit(Path(__file__).resolve().parents[2]),
         "templates": hashed(shipped_folder("templates")),
         "environment": environment(fonts),
-        "control": control() | {"streams": dict(streams)},
+        "control": control()
+        | {"streams": dict(streams), "notebook_environment": dict(notebook_environment)},
         "options": to_plain(dict(options)),
         "started": started.isoformat(timespec="seconds"),
         "ended": ended.isoformat(timespec="seconds"),

@@ -20,8 +20,8 @@ from rca.compare.page import Pages, write_pages
 from rca.compare.reweigh import reweighed
 from rca.compare.session import EXPLORER, STAGE
 from rca.runner.execute import run_notebook
-from rca.runner.fork_engine import WarmProcess
 from rca.runner.report_folder import whole_folder
+from rca.runner.warm_process import WarmProcess
 
 INDEX = "incidents.duckdb"
 RESULT = "comparison.json"

@@ -13,8 +13,9 @@ from papermill.exceptions import PapermillException, PapermillExecutionError
 from papermill.execute import execute_notebook
 
 from rca.base.errors import NotebookError, ParameterError
-from rca.runner.fork_engine import ForkEngine, WarmProcess
+from rca.runner.fork_engine import ForkEngine
 from rca.runner.parameters import checked_parameters, declared_parameters
+from rca.runner.warm_process import WarmProcess
 
 ENGINE = "rca-fork"
 papermill_engines.register(ENGINE, ForkEngine)

@@ -23,12 +23,13 @@ from rca.case.model import Case
 from rca.figures.style import font_folder
 from rca.intake.read import load_case
 from rca.report.render import RenderedReport, render_report
+from rca.report.revisions import keep_earlier, next_revisions
 from rca.runner.execute import check_notebook, read_notebook, run_notebook
-from rca.runner.fork_engine import WarmProcess
 from rca.runner.parameters import declared_parameters
 from rca.runner.plan import Step, plan
 from rca.runner.readings import readings
 from rca.runner.report_folder import whole_folder
+from rca.runner.warm_process import NOTEBOOK_ENVIRONMENT, WarmProcess
 
 Progress = Callable[[str, str], None]  # (stage, "start" | "done" | "failed")
 SEED = 20260306
@@ -48,8 +49,9 @@ class Options:
     cell_timeout_s: float = 1800.0
     parameters: Mapping[str, object] | None = None
     stage_parameters: Mapping[str, Mapping[str, object]] = field(default_factory=dict)
-    paper: str = "A4"
-    language: str = "en"
+    paper: str = ""  # that of case.toml where none is given
+    language: str = ""
+    reason: str = ""  # why the report is issued again
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -102,10 +104,20 @@ def report_case(
         results = assemble(
             case, store, record=_record(case, store, steps, options.seed, parameters)
         )
-        (building / RESULTS).write_text(dumps(results), encoding="utf-8")
+        text = dumps(results)
+        (building / RESULTS).write_text(text, encoding="utf-8")
+        digest = hashlib.sha256(text.encode()).hexdigest()
+        revisions = next_revisions(results, digest, out, reason=options.reason)
         rendered = render_report(
-            case, folder, store, results, paper=options.paper, language=options.language
+            case,
+            folder,
+            store,
+            results,
+            paper=options.paper,
+            language=options.language,
+            revisions=revisions,
         )
+        keep_earlier(out, building, revisions)
         _write_record(case, folder, store, results, options, started)
         progress("report", "done")
     return Outcome(folder=out, results=results, rendered=rendered)
@@ -273,6 +285,7 @@ def _write_record(
         },
         streams={"process": options.seed}
         | {stage: p["seed"] for stage, p in parameters.items() if "seed" in p},
+        notebook_environment={} if options.fresh_kernels else NOTEBOOK_ENVIRONMENT,
         fonts=font_folder(),
         started=started,
         ended=datetime.now(UTC),

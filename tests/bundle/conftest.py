@@ -33,7 +33,7 @@ def write_report(case_dir: Path, report: Path) -> None:
     (report / "figures" / "ä 50.svg").write_text("<svg/>")
     moment = datetime(2026, 3, 6, tzinfo=UTC)
     record = run_record(
-        case, case_dir, results, readings={}, options={}, streams={}, fonts=font_folder(),
+        case, case_dir, results, readings={}, options={}, streams={}, notebook_environment={}, fonts=font_folder(),
         started=moment, ended=moment, warnings=(),
     )  # fmt: skip
     full = sealed(record, report)

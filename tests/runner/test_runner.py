@@ -9,9 +9,9 @@ from nbformat.v4 import new_code_cell, new_notebook
 
 from rca.base.errors import ArchiveError, NotebookError, ParameterError
 from rca.runner.execute import check_notebook, run_notebook
-from rca.runner.fork_engine import WarmProcess
 from rca.runner.plan import plan
 from rca.runner.report_folder import sweep, whole_folder
+from rca.runner.warm_process import WarmProcess
 
 pytestmark = pytest.mark.notebook
 
