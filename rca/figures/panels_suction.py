@@ -334,7 +334,7 @@ def _nucleus(check: SuctionCheck) -> tuple[str, ...]:
         return ()
     return (
         f"At this inlet pressure gas nuclei above {1e6 * check.reservoir.nucleus:.1f} \u00b5m "
-        "radius grow; oil in service holds far coarser ones.",
+        "radius grow; oil in service usually holds coarser ones (common practice).",
     )
 
 
