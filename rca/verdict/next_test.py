@@ -1,37 +1,35 @@
 """The next best test: what it would tell, what it costs, and what perishes first."""
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 
 from rca.base.source import Source
-from rca.evidence.item import Basis, EvidenceItem, Group, Node, NotAssessed
+from rca.evidence.item import Basis, EvidenceItem, Group, Node
 from rca.verdict.knowledge import INLET, Knowledge, PossibleTest
 from rca.verdict.model import NextTest
-from rca.verdict.side import side_of
+from rca.verdict.posterior import Posterior, reported
 
-Ask = Callable[[Knowledge, Sequence[EvidenceItem]], dict[str, float]]
 PERISHABLE_DAYS = 14.0
-SIDED = ("vapour cavitation", "gaseous cavitation", "aeration", "micro-dieseling")
 
 
 def next_tests(
-    knowledge: Knowledge,
-    items: Sequence[EvidenceItem],
-    not_assessed: Sequence[NotAssessed],
-    side: str,
-    groups: int,
-    ask: Ask,
+    knowledge: Knowledge, items: Sequence[EvidenceItem], shown: Posterior, groups: int
 ) -> tuple[NextTest, ...]:
-    """Tests not done yet, perishable and harmless ones first, then by information per cost."""
-    del not_assessed
+    """Tests not done yet, perishable and harmless ones first, then by information per cost.
+
+    Both outcomes of all tests are asked in one pass: every outcome is an item that counts in one
+    member of the batch only.
+    """
     seen = {item.node.value for item in items}
-    now = ask(knowledge, items)
-    found = [
-        _tested(knowledge, items, test, now, side, groups, ask)
-        for test in knowledge.tests
-        if test.looks_at not in seen
-    ]
+    tests = [test for test in knowledge.tests if test.looks_at not in seen]
+    if not tests:
+        return ()
+    outcomes = [_supposed(test, found=found) for test in tests for found in (True, False)]
+    weights = {item.key: np.ones(len(outcomes)) for item in items}
+    weights |= {one.key: np.eye(len(outcomes))[n] for n, one in enumerate(outcomes)}
+    after = reported(knowledge, [*items, *outcomes], weights)
+    found = [_tested(test, shown, after, 2 * n, groups) for n, test in enumerate(tests)]
     return tuple(sorted(found, key=_order))
 
 
@@ -43,19 +41,13 @@ def _order(test: NextTest) -> tuple[bool, float]:
 
 
 def _tested(
-    knowledge: Knowledge,
-    items: Sequence[EvidenceItem],
-    test: PossibleTest,
-    now: Mapping[str, float],
-    side: str,
-    groups: int,
-    ask: Ask,
+    test: PossibleTest, shown: Posterior, after: Posterior, member: int, groups: int
 ) -> NextTest:
-    positive = ask(knowledge, [*items, _supposed(test, found=True)])
-    negative = ask(knowledge, [*items, _supposed(test, found=False)])
+    now = _told(shown, 0)
+    positive, negative = _told(after, member), _told(after, member + 1)
     p = _chance(now, positive, negative)
     gain = _entropy(now) - p * _entropy(positive) - (1 - p) * _entropy(negative)
-    sides = {_side(positive, groups + 1), _side(negative, groups + 1)}
+    sides = {after.side(groups + 1, n)[0] for n in (member, member + 1)}
     return NextTest(
         name=test.name,
         looks_at=test.looks_at,
@@ -66,8 +58,12 @@ def _tested(
         perishes_days=test.perishes_days,
         if_found={k: positive[k] for k in ("suction", "discharge")},
         if_absent={k: negative[k] for k in ("suction", "discharge")},
-        could_change_side=sides != {side},
+        could_change_side=sides != {shown.side(groups)[0]},
     )
+
+
+def _told(found: Posterior, member: int) -> dict[str, float]:
+    return found.sides(member) | found.mechanism(member)
 
 
 def _supposed(test: PossibleTest, *, found: bool) -> EvidenceItem:
@@ -77,7 +73,7 @@ def _supposed(test: PossibleTest, *, found: bool) -> EvidenceItem:
     if test.looks_at == INLET:
         likelihood = {"healthy": no, "low": yes, "near vapour": yes}
     return EvidenceItem(
-        key=f"supposed {test.name}",
+        key=f"supposed {test.name} {found}",
         node=Node(test.looks_at),
         likelihood=likelihood,
         statement="supposed",
@@ -106,10 +102,3 @@ def _entropy(p: Mapping[str, float]) -> float:
         x = float(np.clip(p[key], 1e-9, 1 - 1e-9))
         total -= x * np.log2(x) + (1 - x) * np.log2(1 - x)
     return total
-
-
-def _side(p: Mapping[str, float], groups: int) -> str:
-    others = {
-        k: v for k, v in p.items() if k not in {"suction", "discharge", "both", "neither", *SIDED}
-    }
-    return side_of(p, others, groups)[0]

@@ -72,6 +72,16 @@ def posterior(
     )
 
 
+_PRIORS: dict[str, Posterior] = {}  # by hash of the knowledge
+
+
+def prior_of(knowledge: Knowledge) -> Posterior:
+    """The posterior before any evidence but that the pump failed; kept for each knowledge."""
+    if knowledge.sha256 not in _PRIORS:
+        _PRIORS[knowledge.sha256] = posterior(knowledge, [])
+    return _PRIORS[knowledge.sha256]
+
+
 def held_back(found: Posterior, prior: Posterior, doubt: float) -> Posterior:
     """The posterior mixed with the prior by the chance that the network itself is wrong.
 
@@ -98,8 +108,8 @@ def reported(
     weights: Mapping[str, FloatArray] | None = None,
 ) -> Posterior:
     """The posterior as it is reported: held back by the doubt about the network itself."""
-    prior = posterior(knowledge, [])
-    return held_back(posterior(knowledge, items, weights=weights), prior, knowledge.doubt)
+    found = posterior(knowledge, items, weights=weights)
+    return held_back(found, prior_of(knowledge), knowledge.doubt)
 
 
 def marginal(knowledge: Knowledge, items: Sequence[EvidenceItem], name: str) -> dict[str, float]:

@@ -13,7 +13,15 @@ from rca.evidence.item import EvidenceItem
 from rca.verdict.knowledge import Knowledge
 from rca.verdict.model import Band, Robustness, WeighedItem
 from rca.verdict.network import Numbers, number_keys
-from rca.verdict.posterior import Posterior, held_back, leave_out, odds, posterior, reported
+from rca.verdict.posterior import (
+    Posterior,
+    held_back,
+    leave_out,
+    odds,
+    posterior,
+    prior_of,
+    reported,
+)
 from rca.verdict.side import HELD, side_of
 
 FloatArray = npt.NDArray[np.float64]
@@ -74,7 +82,7 @@ def _drawn(
     unit = qmc.LatinHypercube(d=len(keys), rng=np.random.default_rng(seed)).random(count)
     z = np.ascontiguousarray(ndtri(np.clip(unit, 1e-9, 1 - 1e-9)).T)
 
-    prior = posterior(knowledge, [])
+    prior = prior_of(knowledge)
 
     def block(start: int) -> tuple[FloatArray, FloatArray, int]:
         rows = {key: z[k, start : start + chunk] for k, key in enumerate(keys)}
@@ -143,7 +151,7 @@ def _second_method(knowledge: Knowledge, items: Sequence[WeighedItem]) -> str:
     joint structure enters but one item at a time. Source: reporting practice of taking the
     strongest single item of a dependent group.
     """
-    prior = posterior(knowledge, [])
+    prior = prior_of(knowledge)
     log_s, log_d = (float(np.log(odds(float(p[0])))) for p in (prior.suction, prior.discharge))
     best: dict[str, tuple[float, float]] = {}
     for item in items:

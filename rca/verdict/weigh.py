@@ -31,6 +31,7 @@ from rca.verdict.posterior import (
     marginals,
     odds,
     posterior,
+    prior_of,
     reported,
 )
 from rca.verdict.robust import DRAWS, robustness
@@ -57,7 +58,7 @@ def weigh(
     bubble would have been with one cause taken away; they carry no weight beside their items.
     """
     ids = {item.key: f"E{n:02d}" for n, item in enumerate(items, start=1)}
-    prior = posterior(knowledge, [])
+    prior = prior_of(knowledge)
     base = posterior(knowledge, items)
     shown = held_back(base, prior, knowledge.doubt)
     groups = len({item.group for item in items if item.basis.value != "stated"})
@@ -74,7 +75,7 @@ def weigh(
     robust = robustness(
         knowledge, items, ids, shown, shown_without, weighed, groups, seed=seed, draws=draws
     )
-    tests = next_tests(knowledge, items, not_assessed, side, groups, _ask)
+    tests = next_tests(knowledge, items, shown, groups)
     hidden = marginals(knowledge, items, knowledge.names("cause") + knowledge.names("condition"))
     verdict = Verdict(
         side=side,
@@ -113,11 +114,6 @@ def weigh(
         knowledge=knowledge.identity,
         changes=knowledge.changes,
     )
-
-
-def _ask(knowledge: Knowledge, items: Sequence[EvidenceItem]) -> dict[str, float]:
-    found = reported(knowledge, items)
-    return found.sides() | found.mechanism()
 
 
 def _weighed(
