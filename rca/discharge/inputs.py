@@ -80,7 +80,7 @@ def gather(
         temperature = Reading(value=323.15, unit="K", u=8.0, origin=Origin.ASSUMED)
         assumed.append("oil at 50 °C, ± 8 K")
     rise = rise_time(case, discharge, bursts)
-    if not rise.measured:
+    if not rise.measured and case.pump.transition_angle is None:
         assumed.append(f"pressure rise: {rise.basis}")
     return Inputs(
         inlet=Reading(value=inlet[0], unit="Pa", u=inlet[1], origin=Origin.CALCULATED),
@@ -106,8 +106,8 @@ def rise_time(case: Case, discharge: Reading, bursts: "tuple[BurstFinding, ...]"
         return chamber
     if described and line.spread.p50 > chamber.spread.p50:
         slower = (
-            f"{chamber.basis} (the {line.basis} takes {line.spread.p50 * 1e3:.2g} ms: that is the "
-            "line behind the pump, not its chamber)"
+            f"{chamber.basis}; the {line.basis}, takes {line.spread.p50 * 1e3:.2g} ms, but that "
+            "is the line behind the pump, not its chamber"
         )
         return replace(chamber, basis=slower)
     return line
@@ -129,7 +129,7 @@ def _measured_rise(discharge: Reading, bursts: "tuple[BurstFinding, ...]") -> Ri
     if not seen:
         return None
     time, burst = min(seen, key=lambda pair: pair[0])
-    words = f"fastest large rise in {burst.source.file}, {burst.rate_hz / 1e3:.0f} kHz"
+    words = f"fastest large rise recorded, {burst.source.file} at {burst.rate_hz / 1e3:.0f} kHz"
     return replace(
         _rise(float(np.log(time / 0.8)), 0.25, True, words), course=_usable_course(burst)
     )

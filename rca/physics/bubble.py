@@ -304,7 +304,7 @@ def bubble_batch(
 
 
 def load_kernels() -> None:
-    """Load the compiled kernel (compiles it the first time on a machine), so that no call waits."""
+    """Load the compiled kernel (compile it, the first time on a machine): no later call waits."""
     bubble_batch(1e-4, 313.15, 1e5, 2e6, 1e-3, hold=1e-6)
 
 
