@@ -13,12 +13,14 @@ from rca.archive.store import Store
 from rca.base.shipped import shipped_folder
 from rca.case.model import Case
 from rca.figures.style import font_folder
+from rca.report.catalogue import reader
 from rca.report.pdf import write_pdf
 from rca.report.photos import shrink_photos
 from rca.report.references import linker, shown_ids
+from rca.report.revisions import Revision
 from rca.report.view import build_page
 
-PAPERS = ("A4", "Letter")
+FIRST = Revision(number=0, results_sha256="", issued="", who="", reason="first issue")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -36,11 +38,13 @@ def render_report(
     store: Store,
     results: dict[str, Any],
     *,
-    paper: str = "A4",
-    language: str = "en",
+    paper: str = "",
+    language: str = "",
+    revisions: tuple[Revision, ...] = (FIRST,),
 ) -> RenderedReport:
     """Write the report into the store's own folder.
 
+    Paper and language are those of case.toml where none is given here.
     Raises RenderError for a warning of the renderer, jinja2.UndefinedError for a template that
     names something the page does not have.
     """
@@ -48,7 +52,17 @@ def render_report(
     digest = hashlib.sha256(dumps(results).encode()).hexdigest()
     plates = shrink_photos(case_dir, case.photos, out / "photos")
     _fonts(out / "fonts")
-    page = build_page(case, store, results, digest, plates, paper=paper, language=language)
+    words = reader(language or case.commission.language)
+    page = build_page(
+        case,
+        store,
+        results,
+        digest,
+        plates,
+        paper=paper or case.commission.paper,
+        reader=words,
+        revisions=revisions,
+    )
     environment = jinja2.Environment(
         loader=jinja2.FileSystemLoader(shipped_folder("templates")),
         autoescape=True,
@@ -56,6 +70,9 @@ def render_report(
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    environment.filters["t"] = words.frame
+    environment.filters["w"] = words.said
+    environment.filters["num"] = words.number
     environment.filters["linked"] = linker(shown_ids(page.verdict_panels))
     style = environment.get_template("report.css").render(page=page)
     html = environment.get_template("report.html.j2").render(page=page, style=style)
