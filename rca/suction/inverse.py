@@ -348,9 +348,10 @@ def _remarks(rows: Rows, aside: SetAside, lag: float) -> tuple[str, ...]:
         )
     if lag:
         said.append(
-            f"By the fit the oil thermometer runs {abs(lag) / 60:.0f} min "
-            f"{'behind' if lag > 0 else 'ahead of'} the oil in the line; the temperature is taken "
-            f"that much {'later' if lag > 0 else 'earlier'}."
+            f"The losses fit best with the oil temperature taken {abs(lag) / 60:.0f} min "
+            f"{'later' if lag > 0 else 'earlier'}, and it is: the thermometer runs that far "
+            f"{'behind' if lag > 0 else 'ahead of'} the oil in the line, or the viscosity changes "
+            "with temperature otherwise than stated."
         )
     if aside.reversed:
         said.append(f"{aside.reversed} bins with the shaft or the flow reversed are left out.")

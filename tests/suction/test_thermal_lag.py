@@ -30,7 +30,7 @@ def test_a_lag_of_half_an_hour_is_found_and_mended(small_case: Case) -> None:
     inverse = found[0]
     assert inverse.thermometer_lag == pytest.approx(1800.0)
     assert inverse.viscous.p50[-1] / 1e5 == pytest.approx(0.26, abs=0.015)
-    assert any("30 min behind" in remark for remark in inverse.remarks)
+    assert any("30 min later" in remark for remark in inverse.remarks)
 
 
 @pytest.mark.parametrize("constant", [False, True])
