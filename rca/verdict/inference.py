@@ -5,7 +5,7 @@ pass answers B questions of the same structure. The plan (order of elimination, 
 multiplied first, where each entry goes) depends on the structure alone and is kept.
 """
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from math import prod
@@ -93,10 +93,7 @@ class _Planner:
 
     def plan(self, wanted: tuple[str, ...]) -> Plan:
         """Eliminate all but the wanted variables, then multiply what is left."""
-        hidden = set(self.size) - set(wanted)
-        while hidden:
-            name = min(sorted(hidden), key=self._cost)
-            hidden.remove(name)
+        for name in self._order(wanted):
             mine = [t for t in self.pool if name in t[0]]
             self.pool = [t for t in self.pool if name not in t[0]]
             rest = tuple(sorted(set().union(*(t[0] for t in mine)) - {name}))
@@ -117,9 +114,23 @@ class _Planner:
         self.entries += prod(self.size[n] for n in scope)
         return offset
 
-    def _cost(self, name: str) -> int:
-        union = set().union(*(scope for scope, _ in self.pool if name in scope)) - {name}
-        return prod(self.size[n] for n in union)
+    def _order(self, wanted: tuple[str, ...]) -> Iterator[str]:
+        """The hidden variables, that with the smallest resulting table next; ties by name."""
+        near: dict[str, set[str]] = {n: set() for n in self.size}
+        for scope, _ in self.pool:
+            for name in scope:
+                near[name].update(scope)
+        hidden = sorted(set(self.size) - set(wanted))
+        cost = {n: prod(self.size[m] for m in near[n] if m != n) for n in hidden}
+        while hidden:
+            name = min(hidden, key=cost.__getitem__)
+            hidden.remove(name)
+            yield name
+            around = near.pop(name) - {name}
+            for other in around:
+                near[other] = (near[other] | around) - {name}
+                if other in cost:
+                    cost[other] = prod(self.size[m] for m in near[other] if m != other)
 
     def _merged(self, tables: list[Table]) -> list[Table]:
         """Small tables multiplied first, where that saves work in the step that follows."""
