@@ -39,6 +39,7 @@ def assemble(case: Case, store: Store, *, record: Mapping[str, Any]) -> dict[str
             "descriptor": to_plain(header),
             "machine": _machine(case),
         },
+        "commission": to_plain(case.commission),
         "verdict": verdict["verdict"],
         "causes": verdict["causes"],
         "evidence": verdict["evidence"],

@@ -40,7 +40,9 @@ from rca.base.errors import CaseError, ParameterError, RcaError
     metavar="JSON",
     help="Notebook parameters, e.g. '{\"samples\": 8192}'.",
 )
-@click.option("--paper", type=click.Choice(["A4", "Letter"]), default="A4", show_default=True)
+@click.option("--paper", type=click.Choice(["A4", "Letter"]), help="Paper [as case.toml says].")
+@click.option("--language", type=click.Choice(["en", "de"]), help="Language [as case.toml says].")
+@click.option("--reason", default="", help="Why the report is issued again; printed in it.")
 @click.option("--scheduler", default="", metavar="ADDRESS", help="Run on this Dask cluster.")
 @click.option("--again", is_flag=True, help="Of several cases, also run those already done.")
 @click.option("--json", "as_json", is_flag=True, help="Print the outcome as JSON.")
@@ -51,7 +53,9 @@ def command(
     fresh_kernels: bool,
     jobs: int,
     parameters: str,
-    paper: str,
+    paper: str | None,
+    language: str | None,
+    reason: str,
     scheduler: str,
     again: bool,
     as_json: bool,
@@ -68,7 +72,9 @@ def command(
         "notebooks": notebooks,
         "fresh_kernels": fresh,
         "jobs": jobs,
-        "paper": paper,
+        "paper": paper or "",
+        "language": language or "",
+        "reason": reason,
     }
     try:
         if len(cases) == 1 and not scheduler and "://" not in cases[0]:
