@@ -81,7 +81,11 @@ def _check(
     else:
         try:
             report_case(
-                issued.case, building / RECOMPUTED, _same_options(issued, options), progress
+                issued.case,
+                building / RECOMPUTED,
+                _same_options(issued, options),
+                progress,
+                previous=issued.report,
             )
         except (CaseError, NotebookError, ParameterError, ArchiveError, RenderError) as error:
             failure = f"The run stopped: {error}"

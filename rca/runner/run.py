@@ -70,10 +70,12 @@ def report_case(
     progress: Progress,
     *,
     warm: WarmProcess | None = None,
+    previous: Path | None = None,
 ) -> Outcome:
     """Run every notebook on a case and put its report folder in place.
 
-    ``warm`` lends a warm process that outlives this case; without it one is made.
+    ``warm`` lends a warm process that outlives this case; without it one is made. ``previous`` is
+    the report whose revisions are continued, the one at ``out`` where none is named.
     Raises CaseError, ParameterError, NotebookError, ArchiveError or RenderError; then ``out`` is
     as it was before.
     """
@@ -107,7 +109,8 @@ def report_case(
         text = dumps(results)
         (building / RESULTS).write_text(text, encoding="utf-8")
         digest = hashlib.sha256(text.encode()).hexdigest()
-        revisions = next_revisions(results, digest, out, reason=options.reason)
+        standing = previous if previous is not None else out
+        revisions = next_revisions(results, digest, standing, reason=options.reason)
         rendered = render_report(
             case,
             folder,
@@ -117,7 +120,7 @@ def report_case(
             language=options.language,
             revisions=revisions,
         )
-        keep_earlier(out, building, revisions)
+        keep_earlier(standing, building, revisions)
         _write_record(case, folder, store, results, options, started)
         progress("report", "done")
     return Outcome(folder=out, results=results, rendered=rendered)

@@ -34,7 +34,10 @@ def main() -> None:
     _preload()
     shell = NotebookShell()
     listener = socket.socket(socket.AF_UNIX, socket.SOCK_STREAM)
-    listener.bind(sys.argv[1])
+    try:
+        listener.bind(sys.argv[1])
+    except FileNotFoundError:  # whoever started this process is gone already
+        return
     listener.listen(64)
     sys.stdout.write("ready\n")
     sys.stdout.flush()

@@ -54,6 +54,8 @@ class WarmProcess:
             if pipe is not None:
                 with contextlib.suppress(BrokenPipeError):
                     pipe.close()
+        if not Path(self._address).exists():
+            self._process.kill()  # nothing was run: it is still importing
         try:
             self._process.wait(timeout=5)
         except subprocess.TimeoutExpired:
