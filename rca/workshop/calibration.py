@@ -120,6 +120,24 @@ def score(outcomes: Sequence[Outcome], name: str) -> Score:
     )
 
 
+def cllr(ratios_true: Sequence[float], ratios_false: Sequence[float]) -> float:
+    """Cost of likelihood ratios [bit]: 0 perfect, 1 as good as saying nothing, above 1 worse.
+
+    Brümmer and du Preez 2006 (from memory): half the mean of log2(1 + 1/LR) where the statement
+    is true plus half the mean of log2(1 + LR) where it is not.
+    """
+    true, false = np.asarray(ratios_true), np.asarray(ratios_false)
+    return float(0.5 * (np.mean(np.log2(1 + 1 / true)) + np.mean(np.log2(1 + false))))
+
+
+def ratio_cost(outcomes: Sequence[Outcome], name: str, prior: float) -> float:
+    """Cllr of the ratios by which the evidence moved the odds of one statement."""
+    p = np.clip([o.p[name] for o in outcomes], 1e-6, 1 - 1e-6)
+    ratios = p / (1 - p) / (prior / (1 - prior))
+    y = np.array([o.y[name] for o in outcomes])
+    return cllr(ratios[y].tolist(), ratios[~y].tolist())
+
+
 def reliability(outcomes: Sequence[Outcome], names: Sequence[str]) -> tuple[Bin, ...]:
     """Predictions of the named statements by range, beside how often they came true."""
     p = np.array([o.p[n] for o in outcomes for n in names])
@@ -185,12 +203,14 @@ def _scores(outcomes: Sequence[Outcome]) -> str:
     before = prior.mechanism() | prior.sides()
     lines = [
         f"{'':>24}{'rate':>8}{'prior':>8}{'Brier':>9}{'of rate':>9}{'log loss':>10}{'of rate':>9}"
+        f"{'Cllr':>7}"
     ]
     for name in ("suction", "discharge", *MECHANISMS):
         s = score(outcomes, name)
         lines.append(
             f"{name:>24}{s.rate:>8.2f}{before[name]:>8.2f}{s.brier:>9.3f}{s.brier_base:>9.3f}"
             f"{s.log_loss:>10.3f}{s.log_loss_base:>9.3f}"
+            f"{ratio_cost(outcomes, name, before[name]):>7.2f}"
         )
     return "\n".join(lines)
 
