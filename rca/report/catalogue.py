@@ -19,7 +19,7 @@ from babel.dates import format_date
 from rca.base.errors import RenderError
 
 LANGUAGES = ("en", "de")
-_DECIMAL = re.compile(r"(?<![\w.,-])(-|\u2212)?(\d+)\.(\d+)(?![\w.]*\.\d|\d)")
+_DECIMAL = re.compile(r"(?<![\w.,-])(-|\u2212)?(\d+)\.(\d+)(?![\w.]*\.\d|\d|-\d)")
 
 
 @dataclass(frozen=True, slots=True)
