@@ -10,7 +10,8 @@ from rca.verdict.model import VerdictCheck
 
 LIMITS = (
     "A verdict is an opinion with limits: the numbers of the knowledge file are judgement unless "
-    "marked otherwise, and have not been calibrated on failures of known cause.",
+    "marked otherwise. They were tried on simulated cases, and have not been calibrated on "
+    "failures of known cause.",
     "Each item's weight is taken with all others in place; items of one bottle, sensor or "
     "observer share the chance that what they rest on is unsound.",
 )
