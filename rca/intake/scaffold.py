@@ -22,7 +22,7 @@ reviewer = ""                              # somebody else than the investigator
 question = "Which mechanism damaged the pump, and what let it start?"
 # altitude = "340 m"                       # sets the air pressure; "ambient_pressure" wins
 # may_run = "Not before ..."               # your own words on running the unit now
-# knowledge = "site-knowledge.toml"        # numbers of your site over the shipped ones, with reasons
+# knowledge = "site-knowledge.toml"        # numbers of your site over the shipped ones
 
 [pump]
 # kind = "axial piston"                    # gear, vane, axial piston, radial piston, screw
