@@ -156,6 +156,8 @@ def _from_bundle(path: Path) -> tuple[bytes, bytes]:
         if len(members) > MOST_MEMBERS:
             raise ArchiveError(f"the bundle holds more than {MOST_MEMBERS} files")
         results = [m for m in members if m.filename.rsplit("/", 1)[-1] == RESULTS]
+        shallow = min((m.filename.count("/") for m in results), default=0)
+        results = [m for m in results if m.filename.count("/") == shallow]  # not earlier issues
         if len(results) != 1:
             raise ArchiveError(f"the bundle holds {len(results)} files {RESULTS}, expected one")
         beside = results[0].filename.removesuffix(RESULTS) + RECORD

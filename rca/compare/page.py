@@ -12,6 +12,7 @@ from rca.base.panel import Section
 from rca.base.shipped import shipped_folder
 from rca.compare.panels_actions import CAUTIONS
 from rca.figures.style import font_folder
+from rca.report.catalogue import reader
 from rca.report.pdf import write_pdf
 
 HTML = "compare.html"
@@ -39,6 +40,7 @@ class _Head:
     until: date
     revision: int = 1
     language: str = "en"
+    chapters: tuple[str, ...] = ()
 
 
 def write_pages(
@@ -61,6 +63,10 @@ def write_pages(
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    words = reader("en")
+    environment.filters["t"] = words.frame
+    environment.filters["w"] = words.said
+    environment.filters["num"] = words.number
     environment.filters["linked"] = str  # evidence ids of one report mean nothing beside others
     head = _Head(case_id="Incidents compared", digest=digest[:12], paper=paper, until=until)
     style = environment.get_template("report.css").render(page=head)
