@@ -13,6 +13,7 @@ from rca.archive.codec import dumps, to_plain
 from rca.archive.store import Store
 from rca.base.shipped import shipped_folder
 from rca.figures.style import font_folder
+from rca.report.catalogue import reader
 from rca.report.pdf import write_pdf
 from rca.rerun.model import WORDS, RerunCheck
 from rca.rerun.panels import panels_rerun, tables_of_panels
@@ -92,6 +93,10 @@ def write_rerun(out: Path, check: RerunCheck, run: Mapping[str, Any], *, paper: 
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    words = reader("en")
+    environment.filters["t"] = words.frame
+    environment.filters["w"] = words.said
+    environment.filters["num"] = words.number
     environment.filters["linked"] = str
     style = environment.get_template("report.css").render(page=page)
     html = environment.get_template("rerun.html.j2").render(

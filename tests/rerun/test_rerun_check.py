@@ -13,7 +13,7 @@ from rca.archive.integrity import Breach
 from rca.archive.quantities import headline, quantities, tolerance_of, tolerances
 from rca.rerun.check import check_rerun, not_runnable
 from rca.rerun.model import FileCompared, RunClass
-from rca.rerun.page import rerun_json
+from rca.rerun.page import rerun_json, write_rerun
 from rca.rerun.quantity import compared
 from rca.rerun.reasons import reason_words, reasons
 
@@ -226,3 +226,14 @@ def test_the_rerun_is_plain_json(tmp_path: Path) -> None:
     assert plain["differences"][0]["ratio"] == "inf"
     assert plain["review"]["rerun_by"] is None
     assert to_plain(check)["counts"]["OUTSIDE"] == 1
+
+
+@pytest.mark.pdf
+def test_the_rerun_report_is_laid_out(tmp_path: Path) -> None:
+    check = run_class(changed("verdict/side", "both"))
+    pages = write_rerun(tmp_path, check, {"program": "rca"}, paper="A4")
+    assert pages.pdf is not None
+    html = pages.html.read_text(encoding="utf-8")
+    assert "the verdict changed" in html
+    assert "Rerun by" in html
+    assert list((tmp_path / "tables").glob("rerun-*.csv"))
