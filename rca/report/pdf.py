@@ -1,7 +1,15 @@
-"""HTML to a tagged PDF. Any warning of the renderer is an error; nothing outside is fetched."""
+"""HTML to a tagged, archivable PDF: PDF/A-3a with attachments, and PDF/UA-1 markers beside it.
+
+Any warning of the renderer is an error; nothing outside is fetched. The markers say what the file
+is made to meet, not that a full validator has found it so.
+"""
 
 import logging
 import os
+import warnings
+from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 from urllib.parse import unquote, urlsplit
@@ -32,7 +40,26 @@ HARMLESS = ("harfbuzz-subset",)
 LONGEST_LINE = 300
 
 
-def write_pdf(html: str, folder: Path, target: Path) -> tuple[Path | None, str]:
+UA_MARK = (
+    b'<rdf:Description rdf:about="" xmlns:pdfuaid="http://www.aiim.org/pdfua/ns/id/">'
+    b"<pdfuaid:part>1</pdfuaid:part></rdf:Description>"
+)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Attached:
+    """A file inside the PDF; ``relation`` is Source, Data, Supplement or Alternative."""
+
+    name: str
+    content: bytes
+    description: str
+    relation: str
+    dated: datetime | None = None  # the epoch of the report where none is known
+
+
+def write_pdf(
+    html: str, folder: Path, target: Path, attached: Sequence[Attached] = ()
+) -> tuple[Path | None, str]:
     """Write the PDF; (None, advice) where Pango is missing.
 
     Raises RenderError with every warning the renderer gave.
@@ -47,13 +74,50 @@ def write_pdf(html: str, folder: Path, target: Path) -> tuple[Path | None, str]:
     logger.addHandler(heard)
     try:
         document = weasyprint.HTML(string=html, base_url=BASE, url_fetcher=_served(folder))
-        document.write_pdf(target, pdf_variant="pdf/ua-1")
+        epoch = datetime.fromtimestamp(int(EPOCH), tz=UTC)
+        with warnings.catch_warnings():
+            # the renderer leaves its colour profile open until it is collected
+            warnings.simplefilter("ignore", ResourceWarning)
+            document.write_pdf(
+                target,
+                finisher=_mark_accessible,
+                pdf_variant="pdf/a-3a",
+                attachments=[
+                    weasyprint.Attachment(
+                        string=one.content,
+                        name=one.name,
+                        description=one.description,
+                        created=one.dated or epoch,
+                        modified=one.dated or epoch,
+                        relationship=one.relation,
+                    )
+                    for one in attached
+                ],
+            )
     finally:
         logger.removeHandler(heard)
     if heard.lines:
         target.unlink(missing_ok=True)
         raise RenderError("the renderer warned:\n" + "\n".join(dict.fromkeys(heard.lines)))
     return target, ""
+
+
+def _mark_accessible(document: Any, pdf: Any) -> None:
+    """Put the PDF/UA marker into the one metadata packet, and list each attachment once.
+
+    Raises RenderError where the renderer left no packet to put it into.
+    """
+    del document
+    if "AF" in pdf.catalog:  # the renderer lists each attachment twice
+        pdf.catalog["AF"][:] = dict.fromkeys(pdf.catalog["AF"])
+    for one in pdf.objects:
+        if getattr(one, "extra", None) and one.extra.get("Type") == "/Metadata":
+            packet = one.stream[0]
+            marked = packet.replace(b"</rdf:RDF>", UA_MARK + b"</rdf:RDF>", 1)
+            if marked != packet:
+                one.stream[0] = marked
+                return
+    raise RenderError("the renderer wrote no metadata packet, so the PDF can't be marked")
 
 
 class _Heard(logging.Handler):

@@ -3,6 +3,8 @@
 import hashlib
 import shutil
 from dataclasses import dataclass
+from datetime import UTC, datetime
+from importlib.resources import files
 from pathlib import Path
 from typing import Any
 
@@ -14,7 +16,7 @@ from rca.base.shipped import shipped_folder
 from rca.case.model import Case
 from rca.figures.style import font_folder
 from rca.report.catalogue import reader
-from rca.report.pdf import write_pdf
+from rca.report.pdf import Attached, write_pdf
 from rca.report.photos import shrink_photos
 from rca.report.references import linker, shown_ids
 from rca.report.revisions import Revision
@@ -78,8 +80,26 @@ def render_report(
     html = environment.get_template("report.html.j2").render(page=page, style=style)
     target = out / "report.html"
     target.write_text(html, encoding="utf-8")
-    pdf, advice = write_pdf(html, out, out / "report.pdf")
+    pdf, advice = write_pdf(html, out, out / "report.pdf", _attached(case, out, results))
     return RenderedReport(html=target, pdf=pdf, advice=advice)
+
+
+def _attached(case: Case, out: Path, results: dict[str, Any]) -> list[Attached]:
+    """What the archive must hold beside the pages: results, evidence list, knowledge."""
+    issued = case.commission.issued
+    dated = datetime(issued.year, issued.month, issued.day, tzinfo=UTC) if issued else None
+    knowledge = files("rca.verdict").joinpath("knowledge.toml").read_bytes()
+    rows = [
+        ("results.json", dumps(results).encode(), "All results of this report", "Data"),
+        ("knowledge.toml", knowledge, "The numbers the weighing used", "Source"),
+    ]
+    evidence = out / "tables" / "evidence.csv"
+    if evidence.is_file():
+        rows.append(("evidence.csv", evidence.read_bytes(), "Items of evidence", "Data"))
+    return [
+        Attached(name=name, content=content, description=told, relation=relation, dated=dated)
+        for name, content, told, relation in rows
+    ]
 
 
 def _fonts(out: Path) -> None:

@@ -28,7 +28,7 @@ def report(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def test_the_folder_holds_what_the_contract_names(report: Path) -> None:
     for name in ("report.pdf", "report.html", "results.json", "record.json"):
         assert (report / name).stat().st_size > 0
-    assert len(list((report / "notebooks").glob("*.ipynb"))) == 8
+    assert len(list((report / "notebooks").glob("*.ipynb"))) == 9
     assert list((report / "figures").glob("*.svg"))
     assert list((report / "tables").glob("*.csv"))
 
