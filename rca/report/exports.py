@@ -19,9 +19,12 @@ ENDED = ("rejected", "superseded", "closed", "effective")
 
 
 def write_exports(
-    case: Case, store: Store, results: Mapping[str, Any], *, language: str = "en"
+    case: Case, store: Store, results: Mapping[str, Any], *, language: str = ""
 ) -> None:
-    """Write workbook and narrative, and the calendar where an open action has a due date."""
+    """Write workbook and narrative, and the calendar where an open action has a due date.
+
+    The language is that of case.toml where none is given; the words stay as they are stored.
+    """
     stages = {name: store.read(name) for name in store.stages()}
     sections = [s for name in _ordered(stages) for s in stages[name].sections]
     tables = tables_of(sections)
@@ -49,7 +52,7 @@ def write_exports(
             ),
             sections=sections,
             cautions=CAUTIONS,
-            language=language,
+            language=language or case.commission.language,
         )
     )
     dates = due_dates(case, results)

@@ -22,6 +22,7 @@ from rca.base.shipped import shipped_folder
 from rca.case.model import Case
 from rca.figures.style import font_folder
 from rca.intake.read import load_case
+from rca.report.exports import write_exports
 from rca.report.render import RenderedReport, render_report
 from rca.report.revisions import keep_earlier, next_revisions
 from rca.runner.execute import check_notebook, read_notebook, run_notebook
@@ -121,6 +122,7 @@ def report_case(
             revisions=revisions,
         )
         keep_earlier(standing, building, revisions)
+        write_exports(case, store, results, language=options.language)
         _write_record(case, folder, store, results, options, started)
         progress("report", "done")
     return Outcome(folder=out, results=results, rendered=rendered)
