@@ -77,7 +77,11 @@ def code_files() -> dict[str, str]:
 
 def knowledge_files() -> dict[str, str]:
     """SHA-256 of each table of knowledge, limits, names and tolerances the package ships."""
-    return {name: digest for name, digest in code_files().items() if name.endswith(DATA)}
+    return {
+        name: digest
+        for name, digest in code_files().items()
+        if name.endswith(DATA) and not name.startswith("report/")  # words of the pages
+    }
 
 
 def code_digest() -> str:
