@@ -89,7 +89,7 @@ question = "Which mechanism damaged the pump, and what let it start?"
 # issued = 2026-03-13
 # approver = ""
 # distribution = ["plant manager"]
-# signatories = [{{ role = "Investigator", name = "A. B.", qualification = "", relationship = "" }}]
+# signatories = [{{ role = "Investigator", name = "A. B.", qualification = "" }}]
 
 # [[barriers]]                             # a control that should have prevented or detected it
 # name = "low inlet pressure alarm"
