@@ -38,6 +38,7 @@ def test_every_stage_has_its_notebook() -> None:
         "damage",
         "verdict",
         "actions",
+        "overview",
     ]
 
 
