@@ -35,6 +35,22 @@ class TimeBase:
         return np.asarray(self.origin + (np.arange(self.bins) + 0.5) * self.width)
 
 
+class _Groups:
+    """Samples of one block that share a bin, side by side."""
+
+    def __init__(self, place: npt.NDArray[np.int64]) -> None:
+        """``place``: the bin of every sample, at least one sample."""
+        steps = np.diff(place)
+        self.order: npt.NDArray[np.intp] | None = None
+        if steps.size and steps.min() < 0:
+            self.order = np.argsort(place, kind="stable")
+            place = place[self.order]
+            steps = np.diff(place)
+        self.starts = np.concatenate([[0], np.flatnonzero(steps) + 1])
+        self.bins = place[self.starts]
+        self.sizes = np.diff(np.append(self.starts, place.size))
+
+
 class Bins:
     """Count, sum and extremes of each quantity of one file."""
 
@@ -48,24 +64,26 @@ class Bins:
 
     def add(self, time: FloatArray, columns: dict[str, FloatArray]) -> None:
         """Samples at true times [s], in any order; NaN values are left out."""
-        place = np.floor((time - self.base.origin) / self.base.width).astype(np.int64)
-        within = (place >= 0) & (place < self.base.bins)
+        place = ((time - self.base.origin) * (1.0 / self.base.width)).astype(np.int64)
+        within = (time >= self.base.origin) & (place < self.base.bins)
         self.outside += int((~within).sum())
+        every = _Groups(place) if within.all() else None
         for quantity, values in columns.items():
-            good = within & np.isfinite(values)
-            at, value = place[good], values[good]
-            if at.size and np.any(np.diff(at) < 0):
-                order = np.argsort(at, kind="stable")
-                at, value = at[order], value[order]
-            if not at.size:
+            if every is not None and not np.isnan(values.sum()):
+                self._pool(quantity, every, values)
                 continue
-            starts = np.concatenate([[0], np.flatnonzero(np.diff(at)) + 1])
-            bins = at[starts]
-            self._count[quantity][bins] += np.diff(np.concatenate([starts, [at.size]]))
-            self._sum[quantity][bins] += np.add.reduceat(value, starts)
-            low, high = self._low[quantity], self._high[quantity]
-            low[bins] = np.minimum(low[bins], np.minimum.reduceat(value, starts))
-            high[bins] = np.maximum(high[bins], np.maximum.reduceat(value, starts))
+            good = within & np.isfinite(values)
+            if good.any():
+                self._pool(quantity, _Groups(place[good]), values[good])
+
+    def _pool(self, quantity: str, groups: "_Groups", values: FloatArray) -> None:
+        value = values if groups.order is None else values[groups.order]
+        bins, starts = groups.bins, groups.starts
+        low, high = self._low[quantity], self._high[quantity]
+        self._count[quantity][bins] += groups.sizes
+        self._sum[quantity][bins] += np.add.reduceat(value, starts)
+        low[bins] = np.minimum(low[bins], np.minimum.reduceat(value, starts))
+        high[bins] = np.maximum(high[bins], np.maximum.reduceat(value, starts))
 
     def series(self, record: RecordFile, interval: float) -> list[Series]:
         """The series of every quantity; NaN where there is no sample."""

@@ -101,6 +101,8 @@ class Steps:
 
 def sampling_interval(steps: FloatArray) -> float:
     """The sampling interval [s]; under a clock coarser than the sampling, tick over samples."""
+    if steps.size and steps.min() == steps.max() and steps[0] > 0:
+        return float(steps[0])
     forward = steps[steps > 0]
     if not forward.size:
         return 0.0
