@@ -222,6 +222,8 @@ def numbers(series: "pl.Series") -> tuple[FloatArray, int]:
     """Values as floats, and how many cells hold something that is no number."""
     import polars as pl  # noqa: PLC0415
 
+    if series.dtype == pl.Float64 and not series.null_count():
+        return np.asarray(series.to_numpy()), 0
     if series.dtype.is_numeric():
         filled = series.cast(pl.Float64).fill_null(float("nan"))
         return np.asarray(filled.to_numpy(), dtype=float), 0

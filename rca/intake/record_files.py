@@ -178,6 +178,8 @@ def _planned(file: OpenRecord) -> _Planned:
 def _true(stamps: FloatArray, record: RecordFile, zero: float) -> FloatArray:
     """True time of stamps [s]: plus the stated offset and drift."""
     axis = record.time
+    if not axis.offset_s and not axis.drift_ppm:
+        return stamps
     return np.asarray(stamps + axis.offset_s + (stamps - zero) * axis.drift_ppm * 1e-6)
 
 
@@ -368,4 +370,8 @@ def _remarks(
 
 
 def _si(values: FloatArray, scale: Scale, atmosphere: float) -> FloatArray:
-    return np.asarray(values * scale.factor + scale.offset + (atmosphere if scale.gauge else 0.0))
+    shift = scale.offset + (atmosphere if scale.gauge else 0.0)
+    made = values * scale.factor
+    if shift:
+        made += shift
+    return np.asarray(made)

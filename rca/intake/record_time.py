@@ -207,6 +207,8 @@ def _seconds(column: "pl.Series") -> FloatArray:
     import polars as pl  # noqa: PLC0415
 
     stamps = column.cast(pl.Datetime("us")) if column.dtype == pl.Date else column
+    if stamps.dtype == pl.Datetime("us") and not stamps.null_count():
+        return np.asarray(stamps.to_physical().to_numpy() * 1e-6)
     micro = stamps.dt.epoch("us").cast(pl.Float64).fill_null(float("nan"))
     return np.asarray(micro.to_numpy() * 1e-6, dtype=float)
 
