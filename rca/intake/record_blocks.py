@@ -2,7 +2,7 @@
 
 from collections.abc import Iterator
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from io import BytesIO
 from pathlib import Path
 from tempfile import TemporaryDirectory
@@ -13,7 +13,9 @@ import numpy.typing as npt
 
 from rca.base.errors import Problem, Severity
 from rca.case.model import RecordFile
-from rca.intake.record_time import NUMERIC, choose_format, read_stamps
+from rca.intake.record_cells import Marks, marks_of, numbers
+from rca.intake.record_text import header, other_kind, rewrite, rewriting
+from rca.intake.record_time import AMBIGUOUS, Clock, StampError, choose_format, read_stamps
 from rca.intake.words import nearest
 
 if TYPE_CHECKING:
@@ -23,7 +25,7 @@ FloatArray = npt.NDArray[np.float64]
 BLOCK_ROWS = 50_000  # keeps the peak of memory under 600 MB for any length
 HEAD_ROWS = 2000
 TAIL_BYTES = 200_000
-WIDE_MARKS = {b"\xff\xfe": "utf-16-le", b"\xfe\xff": "utf-16-be"}
+START_BYTES = 4000
 
 
 class RecordError(ValueError):
@@ -41,6 +43,7 @@ class Block:
     stamps: FloatArray  # NaN where unreadable
     columns: dict[str, FloatArray]  # by column name
     bad_cells: dict[str, int]
+    examples: dict[str, str] = field(default_factory=dict)  # one of the bad cells
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,6 +59,8 @@ class OpenRecord:
     rival: str  # another form that reads the stamps as well
     clean: tuple[str, ...]  # columns whose sampled cells are plain numbers
     rows: int | None  # known only where there is no time column
+    names: tuple[str, ...] = ()  # of the header, as a person reads them
+    marks: dict[str, Marks] = field(default_factory=dict)  # of columns of text
 
     @property
     def columns(self) -> tuple[str, ...]:
@@ -72,17 +77,22 @@ def opened(folder: Path, record: RecordFile) -> Iterator[OpenRecord]:
     path = folder / record.file
     try:
         with path.open("rb") as stream:
-            magic = stream.read(4)
+            start = stream.read(START_BYTES)
     except OSError as error:
         raise record_error(
             record, f"a file that can't be read ({error.strerror})", "CSV or Parquet", "Copy it."
         ) from error
-    if not magic:
+    if not start.strip(b"\0"):
         raise record_error(record, "an empty file", "a header row and samples", "Export it again.")
+    kind = other_kind(start)
+    if kind is not None:
+        raise record_error(record, kind[0], "CSV or Parquet", kind[1])
+    parquet = start.startswith(b"PAR1")
+    encoding = None if parquet else rewriting(start)
     with TemporaryDirectory() as scratch:
-        if magic[:2] in WIDE_MARKS:
-            path = _as_utf8(path, Path(scratch) / "record.csv")
-        yield _settled(record, path, parquet=magic == b"PAR1")
+        if encoding is not None:
+            path = rewrite(path, Path(scratch) / "record.csv", encoding)
+        yield _settled(record, path, parquet=parquet)
 
 
 def blocks(file: OpenRecord) -> Iterator[Block]:
@@ -144,31 +154,55 @@ def _settled(record: RecordFile, path: Path, *, parquet: bool) -> OpenRecord:
 
     wanted = [c.column for c in record.channels]
     wanted += [record.time.column] if record.time.column else []
-    separator, lines = (",", 0) if parquet else _separator(path, wanted)
-    bare = OpenRecord(record, path, parquet, separator, lines, "", "", (), None)
+    found = None if parquet else header(path, wanted)
+    bare = OpenRecord(
+        record=record,
+        path=path,
+        parquet=parquet,
+        separator=found.separator if found else ",",
+        title_lines=found.title_lines if found else 0,
+        form="",
+        rival="",
+        clean=(),
+        rows=None,
+        names=found.names if found else (),
+    )
     try:
-        names = _lazy(bare, frozenset()).collect_schema().names()
+        return _looked_at(bare, wanted)
     except (pl.exceptions.PolarsError, OSError) as error:
         raise record_error(
-            record, f"a file that can't be read ({error})", "CSV or Parquet", "Export it again."
+            record,
+            f"a file that can't be read ({str(error).splitlines()[0][:120]})",
+            "rows of one table, CSV or Parquet",
+            "Look for a quotation mark that never closes, or export it again.",
         ) from error
+
+
+def _looked_at(bare: OpenRecord, wanted: list[str]) -> OpenRecord:
+    """Columns, marks and time format, from the first and last rows."""
+    import polars as pl  # noqa: PLC0415
+
+    record = bare.record
+    names = _lazy(bare, frozenset()).collect_schema().names()
     for column in wanted:
         if column not in names:
             near = nearest(column, names, most=1)
             raise record_error(
                 record,
                 f"no column {column!r}",
-                f"one of {', '.join(names[:40])}",
+                f"one of {', '.join(names[:40])}"[:300],
                 (f"Did you mean {near[0]!r}? " if near else "")
                 + "Mend the column name in case.toml; capitals and spaces count.",
             )
     head, tail = _head_and_tail(bare)
     clean = tuple(c for c in bare.columns if _is_clean(head, c) and _is_clean(tail, c))
+    text = [c for c in bare.columns if c not in clean]
+    marks = {c: marks_of(pl.concat([head.get_column(c), tail.get_column(c)])) for c in text}
     form, rival = _time_format(bare, head)
     rows = None
     if not record.time.column:
         rows = int(_lazy(bare, frozenset()).select(pl.len()).collect().item())
-    return OpenRecord(record, path, parquet, separator, lines, form, rival, clean, rows)
+    return replace(bare, form=form, rival=rival, clean=clean, rows=rows, marks=marks)
 
 
 def _lazy(file: OpenRecord, typed: frozenset[str]) -> "pl.LazyFrame":
@@ -178,8 +212,15 @@ def _lazy(file: OpenRecord, typed: frozenset[str]) -> "pl.LazyFrame":
         lazy = pl.scan_parquet(file.path)
         return lazy.rename({name: name.strip() for name in lazy.collect_schema().names()})
     raw = _scan(file, {}).collect_schema().names()
-    numeric = {name: pl.Float64 for name in raw if name.strip() in typed}
-    return _scan(file, numeric).rename({name: name.strip() for name in raw})
+    # the second of two equal names, and a name past the header's end, keep the reader's own
+    read = [
+        file.names[k] if k < len(file.names) and file.names[k] not in file.names[:k] else name
+        for k, name in enumerate(name.strip() for name in raw)
+    ]
+    numeric = {
+        name: pl.Float64 for name, as_read in zip(raw, read, strict=True) if as_read in typed
+    }
+    return _scan(file, numeric).rename(dict(zip(raw, read, strict=True)))
 
 
 def _scan(file: OpenRecord, numeric: dict[str, type["pl.Float64"]]) -> "pl.LazyFrame":
@@ -197,60 +238,47 @@ def _scan(file: OpenRecord, numeric: dict[str, type["pl.Float64"]]) -> "pl.LazyF
 
 
 def _read(file: OpenRecord, typed: frozenset[str]) -> Iterator[Block]:
+    import polars as pl  # noqa: PLC0415
+
     column = file.record.time.column
     wanted = [*file.columns, *([column] if column and column not in file.columns else [])]
-    seen = 0
+    seen, clock = 0, Clock(file.record.time.zone)
     frames = (
         _lazy(file, typed)
         .select(wanted)
         .collect_batches(chunk_size=BLOCK_ROWS, maintain_order=True, engine="streaming")
     )
-    for frame in frames:
+    for whole in frames:
+        frame = whole
+        if column and frame.get_column(column).null_count():
+            frame = whole.filter(~pl.all_horizontal(pl.all().is_null()))  # empty lines are no rows
         stamps = (
-            _times(file, frame.get_column(column))
+            _times(file, frame.get_column(column), clock)
             if column
             else _counted(file.record, seen, frame.height)
         )
         seen += frame.height
-        values, bad = {}, {}
-        for name in file.columns:
-            values[name], bad[name] = numbers(frame.get_column(name))
-        yield Block(stamps, values, bad)
-
-
-def numbers(series: "pl.Series") -> tuple[FloatArray, int]:
-    """Values as floats, and how many cells hold something that is no number."""
-    import polars as pl  # noqa: PLC0415
-
-    if series.dtype == pl.Float64 and not series.null_count():
-        return np.asarray(series.to_numpy()), 0
-    if series.dtype.is_numeric():
-        filled = series.cast(pl.Float64).fill_null(float("nan"))
-        return np.asarray(filled.to_numpy(), dtype=float), 0
-    found = series.cast(pl.Float64, strict=False)
-    bad = 0
-    if found.null_count():
-        text = series.cast(pl.String).str.strip_chars()
-        if bool(text.str.contains(r"^-?\d+,\d+$").fill_null(value=False).any()):
-            text = text.str.replace(",", ".", literal=True)
-        found = text.cast(pl.Float64, strict=False)
-        blank = text.is_null() | (text == "")
-        bad = int((found.is_null() & ~blank.fill_null(value=True)).sum())
-    return np.asarray(found.fill_null(float("nan")).to_numpy(), dtype=float), bad
-
-
-def _times(file: OpenRecord, column: "pl.Series") -> FloatArray:
-    """Seconds since 1970 UTC, NaN where a stamp can't be read."""
-
-    def complain() -> Exception:
-        return record_error(
-            file.record,
-            "stamps without a zone",
-            "a zone",
-            'Add it:  time = { column = "...", zone = "Europe/Vienna" }',
+        read = {n: numbers(frame.get_column(n), file.marks.get(n, Marks())) for n in file.columns}
+        yield Block(
+            stamps,
+            {n: c.values for n, c in read.items()},
+            {n: c.bad for n, c in read.items()},
+            {n: c.example for n, c in read.items() if c.bad},
         )
 
-    return read_stamps(column, file.form, file.record.time.zone, complain=complain)
+
+def _times(file: OpenRecord, column: "pl.Series", clock: Clock | None = None) -> FloatArray:
+    """Seconds since 1970 UTC, NaN where a stamp can't be read."""
+    axis = file.record.time
+    try:
+        return read_stamps(
+            column,
+            file.form,
+            clock or Clock(axis.zone),
+            start=axis.start.timestamp() if axis.start is not None else None,
+        )
+    except StampError as error:
+        raise record_error(file.record, error.found, error.expected, error.mend) from error
 
 
 def _counted(record: RecordFile, before: int, rows: int) -> FloatArray:
@@ -274,18 +302,19 @@ def _head_and_tail(file: OpenRecord) -> tuple["pl.DataFrame", "pl.DataFrame"]:
     with file.path.open("rb") as stream:
         for _ in range(file.title_lines):
             stream.readline()
-        header = stream.readline()
+        titles = stream.readline()
         stream.seek(-TAIL_BYTES, 2)
         stream.readline()  # the rest of a cut line
         tail = stream.read()
     frame = pl.read_csv(
-        BytesIO(header + tail),
+        BytesIO(titles + tail),
         separator=file.separator,
         infer_schema=False,
         truncate_ragged_lines=True,
         encoding="utf8-lossy",
     )
-    return head, frame.rename({name: name.strip() for name in frame.columns})
+    names = head.columns[: frame.width]
+    return head, frame.rename(dict(zip(frame.columns, names, strict=True)))
 
 
 def _is_clean(frame: "pl.DataFrame", column: str) -> bool:
@@ -295,18 +324,6 @@ def _is_clean(frame: "pl.DataFrame", column: str) -> bool:
     if cells.dtype != pl.String:
         return True
     return cells.cast(pl.Float64, strict=False).null_count() == cells.null_count()
-
-
-def _separator(path: Path, wanted: list[str]) -> tuple[str, int]:
-    """The delimiter, and how many title lines stand above the header."""
-    with path.open("rb") as stream:
-        head = stream.read(20_000).decode("utf-8-sig", errors="replace").splitlines()[:60]
-    for number, line in enumerate(head):
-        for delimiter in ";\t,":
-            names = [cell.strip().strip('"').strip() for cell in line.split(delimiter)]
-            if len(names) > 1 and all(column in names for column in wanted):
-                return delimiter, number
-    return max(";\t,", key=lambda d: min((line.count(d) for line in head[:10]), default=0)), 0
 
 
 def _time_format(file: OpenRecord, head: "pl.DataFrame") -> tuple[str, str]:
@@ -321,7 +338,7 @@ def _time_format(file: OpenRecord, head: "pl.DataFrame") -> tuple[str, str]:
     if not name or head.get_column(name).dtype != pl.String:
         return "", ""
     first = choose_format(head.get_column(name))
-    if first[0] == NUMERIC or (first[0] and not first[0].startswith(("%d/", "%m/"))):
+    if first[0] and not first[0].startswith(AMBIGUOUS):
         return first
     parts: list[pl.Series] = []
     for frame in (
@@ -332,16 +349,3 @@ def _time_format(file: OpenRecord, head: "pl.DataFrame") -> tuple[str, str]:
         column = frame.get_column(name)
         parts += [column.head(100), column.gather_every(max(1, frame.height // 200))]
     return choose_format(pl.concat(parts)) if parts else ("", "")
-
-
-def _as_utf8(path: Path, target: Path) -> Path:
-    with path.open("rb") as stream:
-        encoding = WIDE_MARKS[stream.read(2)]
-    with (
-        path.open(encoding=encoding, errors="replace", newline="") as wide,
-        target.open("w", encoding="utf-8", newline="") as narrow,
-    ):
-        wide.read(1)  # the byte order mark
-        while part := wide.read(1_000_000):
-            narrow.write(part)
-    return target

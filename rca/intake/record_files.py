@@ -13,7 +13,7 @@ from pathlib import Path
 import numpy as np
 import numpy.typing as npt
 
-from rca.base.errors import Problem, Severity
+from rca.base.errors import Problem
 from rca.base.source import Source
 from rca.base.units import Scale, channel_scale
 from rca.case.model import Case, RecordFile
@@ -29,6 +29,8 @@ from rca.intake.record_blocks import (
     record_error,
     slowly,
 )
+from rca.intake.record_cells import without_error_values
+from rca.intake.record_remarks import column_remarks, file_remarks
 from rca.intake.record_spells import SpellFinder, Stretch
 from rca.intake.record_steps import Steps, Timing, sampling_interval
 
@@ -232,6 +234,8 @@ class _Pass:
         self.scales = taken
         self.quantities = [q for q, _ in taken.values()]
         self.bad_cells = dict.fromkeys(self.quantities, 0)
+        self.examples: dict[str, str] = {}
+        self.error_values = dict.fromkeys(self.quantities, 0)
         self.bad_stamps = self.strays = 0
         self.steps = Steps(plan.interval)
         self.bins = Bins(base, self.quantities) if base is not None and not plan.fast else None
@@ -267,7 +271,10 @@ class _Pass:
         columns = {}
         for column, (quantity, scale) in self.scales.items():
             self.bad_cells[quantity] += block.bad_cells[column]
-            values = block.columns[column]
+            if column in block.examples:
+                self.examples.setdefault(quantity, block.examples[column])
+            values, lost = without_error_values(block.columns[column])
+            self.error_values[quantity] += lost
             columns[quantity] = _si(values if whole else values[known], scale, self.atmosphere)
         self.steps.add(time)
         if self.bins is not None:
@@ -301,7 +308,20 @@ class _Pass:
             channels=tuple(c.quantity for c in record.channels),
             fast=self.plan.fast,
             repeated_stamps=timing.repeated,
-            remarks=_remarks(record, self.scales, self.file, self.strays),
+            remarks=(
+                *file_remarks(self.file, set(self.scales), self.strays),
+                *(r for c, q in self.scales.items() for r in self._column(c, q[0], timing.rows)),
+            ),
+        )
+
+    def _column(self, column: str, quantity: str, rows: int) -> tuple[Problem, ...]:
+        return column_remarks(
+            self.file,
+            column,
+            bad=self.bad_cells[quantity],
+            example=self.examples.get(quantity, ""),
+            error_values=self.error_values[quantity],
+            rows=rows,
         )
 
     def _bursts(self, summary: FileSummary) -> list[Burst]:
@@ -325,48 +345,6 @@ class _Pass:
             )
             for quantity, values in columns.items()
         ]
-
-
-def _remarks(
-    record: RecordFile, scales: dict[str, tuple[str, Scale]], file: OpenRecord, strays: int
-) -> tuple[Problem, ...]:
-    """What a person should look at, though the file was read."""
-    found = [
-        Problem(
-            severity=Severity.WARNING,
-            file=record.file,
-            place=f"column {channel.column}",
-            found=f"a second channel of {channel.quantity}",
-            expected="one channel a quantity; the first one is used",
-            mend="Keep the better sensor first, or remove the other from case.toml.",
-        )
-        for channel in record.channels
-        if channel.column not in scales
-    ]
-    place = f"column {record.time.column}"
-    if file.rival:
-        found.append(
-            Problem(
-                severity=Severity.WARNING,
-                file=record.file,
-                place=place,
-                found=f"stamps that read equally well as {file.form} and as {file.rival}",
-                expected="stamps that tell day from month",
-                mend=f"They are read as {file.form}; check the date, or export ISO 8601 stamps.",
-            )
-        )
-    if strays:
-        found.append(
-            Problem(
-                severity=Severity.WARNING,
-                file=record.file,
-                place=place,
-                found=f"{strays} rows with times outside those of the first and last rows",
-                expected="a clock that keeps the time",
-                mend="Those rows are left out; look at the logger's clock.",
-            )
-        )
-    return tuple(found)
 
 
 def _si(values: FloatArray, scale: Scale, atmosphere: float) -> FloatArray:
