@@ -341,7 +341,7 @@ def localised(epoch: FloatArray, zone: str) -> tuple[FloatArray, set[float]]:
 
 def _second_pass(epoch: FloatArray, inside: npt.NDArray[np.intp]) -> npt.NDArray[np.intp]:
     """Of stamps within one repeated hour those of its second pass."""
-    if not inside.size or epoch.size < 2:  # noqa: PLR2004  nothing to tell apart
+    if not inside.size or epoch.size < 2:
         return inside[:0]
     backward = epoch[-1] < epoch[0]
     steps = np.diff(epoch[inside]) * (-1.0 if backward else 1.0)
