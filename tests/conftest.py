@@ -1,6 +1,10 @@
 """Fixtures shared by all tests."""
 
+import os
 from pathlib import Path
+
+# Before NumPy is loaded: several test processes share the cores already.
+os.environ.setdefault("OMP_NUM_THREADS", "1")
 
 import pytest
 
