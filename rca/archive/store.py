@@ -61,7 +61,12 @@ class Store:
 
     def has(self, stage: str) -> bool:
         """Whether that stage was stored."""
-        return (self.folder / "stages" / f"{_checked(stage)}.json").is_file()
+        return self.written_ns(stage) is not None
+
+    def written_ns(self, stage: str) -> int | None:
+        """When that stage was stored [ns since 1970]; None where it was not."""
+        path = self.folder / "stages" / f"{_checked(stage)}.json"
+        return path.stat().st_mtime_ns if path.is_file() else None
 
     def read(self, stage: str) -> StageResult:
         """One stage, typed but for its check (see ``from_plain``).

@@ -1,26 +1,11 @@
-"""Everything a notebook of an investigation imports.
+"""A case and the store its notebooks fill: what each of them takes and keeps."""
 
-    from rca.notebook import open_investigation, show
-
-    inv = open_investigation(case_dir, store_dir)
-    samples = inv.read_oil()
-    check = check_oil(inv.case, samples)
-    ...
-    inv.keep("oil", check=check, evidence=..., section=..., figures=...)
-
-Opened by hand in JupyterLab with an empty ``store_dir``, the results go to a folder of the case
-under the user's temporary folder, so that the notebooks run one after another find each other's.
-"""
-
-import hashlib
-import tempfile
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from datetime import date, datetime
 from pathlib import Path
 from typing import TypeVar
 
-from IPython.display import HTML, display
 from matplotlib.figure import Figure
 
 from rca.actions.effect import effects
@@ -34,92 +19,19 @@ from rca.base.units import QUANTITY_DIMENSIONS, parse_quantity
 from rca.case.model import Case, Gap
 from rca.case.series import AlignedRecord, FloatArray
 from rca.case.site import local_atmosphere
-from rca.damage.check import DamageCheck, check_damage
-from rca.discharge.check import check_discharge
-from rca.discharge.model import DischargeCheck
-from rca.evidence.from_damage import from_damage
-from rca.evidence.from_discharge import from_discharge
-from rca.evidence.from_history import from_history
-from rca.evidence.from_oil import from_oil
-from rca.evidence.from_records import from_records
-from rca.evidence.from_statements import from_statements
-from rca.evidence.from_suction import from_suction
 from rca.evidence.item import EvidenceItem, NotAssessed
-from rca.figures.actions import figures_actions
-from rca.figures.damage import figures_damage
-from rca.figures.discharge import figures_discharge
-from rca.figures.notebook_page import section_html
-from rca.figures.oil import figures_oil
-from rca.figures.panels_actions import panels_actions
-from rca.figures.panels_case import panels_intake
-from rca.figures.panels_damage import panels_damage
-from rca.figures.panels_discharge import panels_discharge
-from rca.figures.panels_oil import panels_oil
-from rca.figures.panels_overview import panels_overview
-from rca.figures.panels_records import FileRow, panels_records
-from rca.figures.panels_suction import panels_suction
-from rca.figures.panels_verdict import panels_verdict
-from rca.figures.records import figures_records
+from rca.figures.panels_records import FileRow
 from rca.figures.style import svg_bytes
-from rca.figures.suction import figures_suction
 from rca.figures.timeline import Coverage
-from rca.figures.verdict import figures_verdict
 from rca.intake.oil_reports import OilReading, read_oil_reports
-from rca.intake.read import read_case, site_knowledge
+from rca.intake.read import site_knowledge
 from rca.intake.record_files import RecordReading, read_records
-from rca.oil.check import OilCheck, check_oil
 from rca.records.bursts import BurstFinding, burst_finding
-from rca.records.check import RecordCheck, check_records, usable
-from rca.suction.check import SuctionCheck, check_suction, inlet_limit
-from rca.verdict.knowledge import Knowledge, shipped_knowledge
-from rca.verdict.model import VerdictCheck
-from rca.verdict.weigh import weigh
+from rca.records.check import usable
+from rca.suction.check import SuctionCheck, inlet_limit
+from rca.verdict.knowledge import Knowledge
 
 T = TypeVar("T")
-
-__all__ = [
-    "ActionsCheck",
-    "DamageCheck",
-    "DischargeCheck",
-    "Investigation",
-    "OilCheck",
-    "RecordCheck",
-    "SuctionCheck",
-    "VerdictCheck",
-    "check_damage",
-    "check_discharge",
-    "check_oil",
-    "check_records",
-    "check_suction",
-    "figures_actions",
-    "figures_damage",
-    "figures_discharge",
-    "figures_oil",
-    "figures_records",
-    "figures_suction",
-    "figures_verdict",
-    "from_damage",
-    "from_discharge",
-    "from_history",
-    "from_oil",
-    "from_records",
-    "from_statements",
-    "from_suction",
-    "inlet_limit",
-    "open_investigation",
-    "panels_actions",
-    "panels_damage",
-    "panels_discharge",
-    "panels_intake",
-    "panels_oil",
-    "panels_overview",
-    "panels_records",
-    "panels_suction",
-    "panels_verdict",
-    "shipped_knowledge",
-    "show",
-    "weigh",
-]
 
 
 @dataclass(frozen=True, slots=True)
@@ -291,30 +203,6 @@ class Investigation:
         if record is not None and record.time_s.size:
             days.append(date.fromordinal(719163 + int(record.time_s[-1] // 86400)))
         return max(days, default=None)
-
-
-def open_investigation(case_dir: str, store_dir: str = "") -> Investigation:
-    """The case in ``case_dir`` and the store in ``store_dir``.
-
-    Raises CaseError with every problem of the case folder.
-    """
-    folder = Path(case_dir).resolve()
-    reading = read_case(folder)
-    if reading.case is None or reading.errors:
-        raise CaseError(reading.errors)
-    if store_dir:
-        store = Path(store_dir)
-    else:
-        digest = hashlib.sha256(str(folder).encode()).hexdigest()[:12]
-        store = Path(tempfile.gettempdir()) / f"rca-notebooks-{digest}"
-    return Investigation(
-        case=reading.case, problems=reading.problems, folder=folder, store=Store(store)
-    )
-
-
-def show(section: Section, figures: Mapping[str, Figure] | None = None) -> None:
-    """Show the panels of a section with their figures, as the report will lay them out."""
-    display(HTML(section_html(section, figures or {})))
 
 
 R = TypeVar("R", OilReading, RecordReading)
