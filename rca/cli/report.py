@@ -11,6 +11,7 @@ import click
 from rich.console import Console
 from rich.progress import BarColumn, Progress, SpinnerColumn, TextColumn, TimeElapsedColumn
 
+from rca.base.counted import counted
 from rca.base.errors import CaseError, ParameterError, RcaError
 
 
@@ -82,7 +83,8 @@ def command(
         else:
             _many(cases, out, given, parameters, scheduler, screen, again=again, as_json=as_json)
     except CaseError as error:
-        screen.print(f"The case can't be used; {len(error.problems)} problems:", style="bold")
+        found = counted(len(error.problems), "problem")
+        screen.print(f"The case can't be used; {found}:", style="bold")
         for problem in error.problems:
             screen.print(f"  {problem}", markup=False, highlight=False)
         screen.print("Look at all of it with:  rca check CASE")

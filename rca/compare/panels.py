@@ -1,8 +1,8 @@
 """The comparison in words and tables, section by section."""
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.compare.check import Comparison
-from rca.compare.counted import counted
 from rca.compare.gather import Refused
 from rca.compare.panels_actions import actions_panel, outcomes_panel
 from rca.compare.panels_groups import group_panels

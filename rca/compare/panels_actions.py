@@ -1,8 +1,8 @@
 """Panels of actions across cases: what they did, how they stand, and the cautions."""
 
+from rca.base.counted import counted
 from rca.base.panel import Column, Panel, Table
 from rca.compare.check import Comparison
-from rca.compare.counted import counted
 from rca.compare.open_actions import Register, Row, Standing
 from rca.compare.outcomes import KindOutcome, Result
 from rca.compare.table import IncidentTable

@@ -1,9 +1,9 @@
 """Panels a knowledge version: what keeps coming back, and base rates."""
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Table
 from rca.compare.base_rates import CAUTION, ENOUGH, BaseRate
 from rca.compare.check import Comparison, KnowledgeGroup
-from rca.compare.counted import counted
 from rca.compare.pareto import FEW, Bar, Ranking, ordered
 from rca.figures.numbers import share
 from rca.stats.event_rate import Estimate

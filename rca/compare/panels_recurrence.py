@@ -2,9 +2,9 @@
 
 from dataclasses import replace
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Table
 from rca.compare.check import Comparison
-from rca.compare.counted import counted
 from rca.compare.recurrence import FEWEST_FOR_TREND, SIGNIFICANT, Recurrence
 
 PER = {"machine-days": (365.25, "a machine-year"), "running hours": (1000.0, "1000 running hours")}
