@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from datetime import UTC, date, datetime, time, timedelta, tzinfo
 from enum import StrEnum
 
+from rca.base.counted import counted
 from rca.base.source import Source
 from rca.case.model import Case
 from rca.case.oil import OilSample
@@ -168,7 +169,7 @@ def _bench(case: Case, zone: tzinfo) -> list[Entry]:
                 when,
                 Lane.BENCH,
                 "parts read",
-                f"{len(ids)} findings, {ids[0]} to {ids[-1]}",
+                f"{counted(len(ids), 'finding')}, {ids[0]} to {ids[-1]}",
                 first.source,
                 zone,
             )

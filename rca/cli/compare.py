@@ -49,7 +49,7 @@ def command(
     incidents.duckdb and tables. Files that can't be used are named and left out.
     Exit status: 0 done, 2 could not be done, not one usable file among them.
     """
-    from rca.compare.counted import counted
+    from rca.base.counted import counted
     from rca.runner.compare import Asked, NothingUsableError, compare
 
     asked = Asked(

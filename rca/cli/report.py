@@ -173,7 +173,7 @@ def _many(
         wall = time.monotonic() - started
         states = [one.state for one in ended]
         told = ", ".join(f"{states.count(state)} {state}" for state in dict.fromkeys(states))
-        print(f"{len(ended)} cases in {wall:.0f} s: {told}.")
+        print(f"{counted(len(ended), 'case')} in {wall:.0f} s: {told}.")
         for one in failed:
             print(f"  {one.case}: {one.message}")
     sys.exit(2 if failed else 0)

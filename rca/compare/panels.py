@@ -44,7 +44,9 @@ def _time(table: IncidentTable, check: Comparison, figures: frozenset[str]) -> P
     machines = len(set(table.machines))
     limits = [f"Observed until {check.until}."]
     if check.undated:
-        limits.append(f"{len(check.undated)} cases without a date stand in no figure over time.")
+        limits.append(
+            f"{counted(len(check.undated), 'case')} without a date: in no figure over time."
+        )
     if check.invented:
         limits.append(
             f"{check.invented} of {check.n} cases say themselves that they are invented."
@@ -251,6 +253,6 @@ def _read(
         title="What was read",
         question="Which files stand behind this, and which could not be used?",
         answer=f"{counted(check.n, 'case')}; {left} could not be used; "
-        f"{len(replaced)} copies or older revisions are not counted.",
+        f"{counted(len(replaced), 'copy', 'copies')} or older revisions not counted.",
         tables=tuple(tables),
     )

@@ -15,8 +15,9 @@ def came_back_panel(check: Comparison) -> Panel:
     found = check.came_back
     if found:
         first = found[0]
+        times = counted(len(first.cases), "incident")
         answer = (
-            f"{first.cause} came back on {first.machine}: {len(first.cases)} incidents. "
+            f"{first.cause} came back on {first.machine}: {times}. "
             f"{len(found)} pairs of machine and cause came back in all."
         )
     else:

@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 
+from rca.base.counted import counted
 from rca.base.errors import Problem
 from rca.base.panel import Column, Panel, Section, Table
 from rca.case.model import Case
@@ -52,8 +53,10 @@ def panels_intake(case: Case, problems: Sequence[Problem]) -> Section:
                 key="intake.files",
                 title="What was received",
                 question="What does the case folder hold, and who held it?",
-                answer=f"{len(case.files)} files, {len(case.photos)} photographs, "
-                f"{len(case.findings)} findings, {len(case.history)} history entries.",
+                answer=f"{counted(len(case.files), 'file')}, "
+                f"{counted(len(case.photos), 'photograph')}, "
+                f"{counted(len(case.findings), 'finding')}, "
+                f"{counted(len(case.history), 'history entry', 'history entries')}.",
                 tables=tuple(tables),
             ),
         ),

@@ -1,5 +1,6 @@
 """Panels of the damage."""
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.case.vocabulary import Extent, Side
 from rca.damage.check import DamageCheck
@@ -17,7 +18,7 @@ def panels_damage(check: DamageCheck) -> Section:
         answer = "No finding is on record."
     else:
         answer = (
-            f"{len(found)} signs found: {count(Side.INLET)} on inlet-side zones, "
+            f"{counted(len(found), 'sign')} found: {count(Side.INLET)} on inlet-side zones, "
             f"{count(Side.DISCHARGE)} on discharge-side zones, {count(Side.NEITHER)} on zones of "
             f"neither side; {absent} looked for and absent."
         )

@@ -4,6 +4,7 @@ from collections.abc import Mapping, Sequence
 
 from matplotlib.figure import Figure
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.case.model import Case
 from rca.case.oil import OilSample
@@ -103,7 +104,8 @@ def _sequence(
         title="Sequence of events",
         question="What happened when, by which clock, and when did nobody record?",
         answer=(
-            f"{count} dated entries; {len(records)} records with {gaps} gaps."
+            f"{counted(count, 'dated entry', 'dated entries')}; "
+            f"{counted(len(records), 'record')} with {counted(gaps, 'gap')}."
             if count or records
             else "Nothing in the case carries a date."
         ),
@@ -115,7 +117,7 @@ def _sequence(
                 "bar: slow record, hatched where it has a gap; triangle: fast record. Numbers "
                 "are rows of the table.",
                 alt=f"Timeline of {count} dated entries up to the failure and of "
-                f"{len(records)} records with {gaps} gaps.",
+                f"{counted(len(records), 'record')} with {counted(gaps, 'gap')}.",
             ),
         )
         if "overview-sequence" in figures
@@ -166,7 +168,7 @@ def _circuit(case: Case, check: SuctionCheck, figures: Mapping[str, Figure]) -> 
     lengths = [p.length.value * p.count for p in case.suction_line if p.length is not None]
     answer = "The parts of the suction line are not recorded."
     if case.suction_line:
-        answer = f"{len(case.suction_line)} parts from the reservoir to the pump"
+        answer = f"{counted(len(case.suction_line), 'part')} from the reservoir to the pump"
         answer += f", {sum(lengths):.3g} m of line." if lengths else "."
     caption = "Suction path as stated in case.toml, lengths not to scale."
     if check.normal is not None:
@@ -275,7 +277,7 @@ def _barriers(case: Case) -> Panel:
         title="Barriers",
         question="Which control should have prevented or shown it, and what became of it?",
         answer=(
-            f"{len(barriers)} barriers looked at, {held} worked."
+            f"{counted(len(barriers), 'barrier')} looked at, {held} worked."
             if barriers
             else "Not looked into: no barrier is stated in case.toml."
         ),

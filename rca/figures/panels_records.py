@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.figures.numbers import bar, celsius, moment
 from rca.records.check import RecordCheck
@@ -89,11 +90,11 @@ def _quality(check: RecordCheck, files: Sequence[FileRow]) -> Panel:
         title="What was recorded, and how well",
         question="Which channels are on record, over what time, and can they be trusted?",
         answer=(
-            f"{len(files)} files with {', '.join(check.quantities)}."
+            f"{counted(len(files), 'file')} with {', '.join(check.quantities)}."
             if files
             else "No record could be read."
         ),
-        status=f"{len(aside)} channels set aside" if aside else "all channels usable",
+        status=f"{counted(len(aside), 'channel')} set aside" if aside else "all channels usable",
         paragraphs=tuple(
             f"{s.quantity.capitalize()}: {s.finding}{'; set aside' if s.set_aside else '; kept'}."
             for s in check.sensors

@@ -2,6 +2,7 @@
 
 from collections.abc import Callable
 
+from rca.base.counted import counted
 from rca.base.panel import Column, FigureRef, Panel, Section, Table
 from rca.case.vocabulary import DISCHARGE_MECHANISMS, SUCTION_MECHANISMS
 from rca.figures.numbers import bar, celsius, ratio, share
@@ -187,7 +188,8 @@ def _weight(check: VerdictCheck) -> Panel:
         title="Weight of evidence",
         question="What did each item contribute, and how strongly?",
         answer=(
-            f"{len(check.evidence)} items weigh, in {len(check.verdict.groups)} groups."
+            f"{counted(len(check.evidence), 'item')} weighed, in "
+            f"{counted(len(check.verdict.groups), 'group')}."
             if check.evidence
             else "No item weighs; nothing was looked at."
         ),
