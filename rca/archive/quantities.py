@@ -13,7 +13,7 @@ from importlib.resources import files
 from typing import Any
 
 Leaf = str | int | float | bool | None
-APART = ("record", "format")  # compared as reasons, not as quantities
+APART = ("record", "format", "units")  # compared as reasons, not as quantities
 KEYS = ("key", "id", "name", "cause", "without", "group", "quantity", "property", "file")
 HEADLINE = (
     "verdict/sides/*",

@@ -17,6 +17,13 @@ from rca.base.errors import ArchiveError
 from rca.case.model import Case
 
 FORMAT = 1
+UNITS = (
+    "SI throughout. Pressure: Pa, absolute, a difference where the name says drop, loss, "
+    "depression, offset or shortfall. Temperature: K. Flow: m3/s. Kinematic viscosity: m2/s. "
+    "Time: s; names in _s count from 1970-01-01 UTC; hours and days where the name says so. "
+    "Air: volume share at the pressure of the place, 0 to 1. Probabilities and shares: 0 to 1. "
+    "An oil property has its unit beside it."
+)
 CHECKS = ("suction", "discharge", "oil", "records", "damage")
 
 
@@ -30,6 +37,7 @@ def assemble(case: Case, store: Store, *, record: Mapping[str, Any]) -> dict[str
     header = case.header
     results: dict[str, Any] = {
         "format": FORMAT,
+        "units": UNITS,
         "case": {
             "id": header.id,
             "title": header.title,
