@@ -15,6 +15,7 @@ from typing import Any
 from urllib.parse import unquote, urlsplit
 
 from rca.base.errors import RenderError
+from rca.report.pdf_marks import mark_conformance
 
 BASE = (
     "https://report.invalid/"  # reserved by RFC 2606: names no place; relative links need a host
@@ -38,12 +39,6 @@ ADVICE = (
 # Said by the renderer about the machine, not about the page.
 HARMLESS = ("harfbuzz-subset",)
 LONGEST_LINE = 300
-
-
-UA_MARK = (
-    b'<rdf:Description rdf:about="" xmlns:pdfuaid="http://www.aiim.org/pdfua/ns/id/">'
-    b"<pdfuaid:part>1</pdfuaid:part></rdf:Description>"
-)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -80,7 +75,7 @@ def write_pdf(
             warnings.simplefilter("ignore", ResourceWarning)
             document.write_pdf(
                 target,
-                finisher=_mark_accessible,
+                finisher=mark_conformance,
                 pdf_variant="pdf/a-3a",
                 attachments=[
                     weasyprint.Attachment(
@@ -100,24 +95,6 @@ def write_pdf(
         target.unlink(missing_ok=True)
         raise RenderError("the renderer warned:\n" + "\n".join(dict.fromkeys(heard.lines)))
     return target, ""
-
-
-def _mark_accessible(document: Any, pdf: Any) -> None:
-    """Put the PDF/UA marker into the one metadata packet, and list each attachment once.
-
-    Raises RenderError where the renderer left no packet to put it into.
-    """
-    del document
-    if "AF" in pdf.catalog:  # the renderer lists each attachment twice
-        pdf.catalog["AF"][:] = dict.fromkeys(pdf.catalog["AF"])
-    for one in pdf.objects:
-        if getattr(one, "extra", None) and one.extra.get("Type") == "/Metadata":
-            packet = one.stream[0]
-            marked = packet.replace(b"</rdf:RDF>", UA_MARK + b"</rdf:RDF>", 1)
-            if marked != packet:
-                one.stream[0] = marked
-                return
-    raise RenderError("the renderer wrote no metadata packet, so the PDF can't be marked")
 
 
 class _Heard(logging.Handler):

@@ -1,6 +1,7 @@
 """The sample case becomes a report: every page holds what it must, nothing else is fetched."""
 
 import json
+import re
 import shutil
 from pathlib import Path
 
@@ -12,6 +13,8 @@ from rca.archive.results import validate
 from rca.base.errors import RenderError
 from rca.cli.main import main
 from rca.report.pdf import write_pdf
+from tests.report.pdf_audit import faults, headings, validator_failures
+from tests.report.test_archive_pdf import needs_validator
 
 pytestmark = [pytest.mark.notebook, pytest.mark.pdf]
 
@@ -68,9 +71,20 @@ def test_the_pdf_says_the_same_as_the_results(report: Path) -> None:
     assert len(pdf.outline) >= 10
 
 
-def test_every_id_of_the_html_stands_once_and_every_figure_has_words(report: Path) -> None:
-    import re
+def test_the_pdf_can_be_kept_and_read_aloud(report: Path) -> None:
+    assert faults(report / "report.pdf") == []
+    html = (report / "report.html").read_text(encoding="utf-8")
+    assert headings(report / "report.pdf") == [int(n) for n in re.findall(r"<h([1-6])\b", html)]
 
+
+@needs_validator
+@pytest.mark.outside_value(source="rules of the validator 'page' for PDF/A-3a and PDF/UA-1")
+@pytest.mark.parametrize("profile", ["3a", "ua1"])
+def test_an_independent_validator_passes_the_pdf(report: Path, profile: str) -> None:
+    assert validator_failures(report / "report.pdf", profile) == []
+
+
+def test_every_id_of_the_html_stands_once_and_every_figure_has_words(report: Path) -> None:
     html = (report / "report.html").read_text(encoding="utf-8")
     ids = re.findall(r'\bid="([^"]+)"', html)
     assert len(ids) == len(set(ids))
